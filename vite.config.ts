@@ -1,0 +1,40 @@
+import { fileURLToPath } from 'node:url'
+import { svelte } from '@sveltejs/vite-plugin-svelte'
+import { defineConfig } from 'vitest/config'
+
+const at = (path: string) => fileURLToPath(new URL(path, import.meta.url))
+
+/**
+ * One configuration for the page, its worker, the headless command and the tests.
+ * `vite build` makes the page in dist/page; `vite build --ssr src/headless/main.ts` the command in dist/headless.
+ */
+export default defineConfig(({ isSsrBuild }) => ({
+  root: at('./src'),
+  publicDir: isSsrBuild ? false : at('./sample-images/scans'),
+  base: './',
+  plugins: [svelte()],
+  // ndarray-fft was written for Node: it names `global` and reaches for Node's `buffer` through its pool of arrays.
+  define: isSsrBuild ? {} : { global: 'globalThis' },
+  resolve: { alias: isSsrBuild ? {} : { buffer: at('./worker/buffer.ts') } },
+  optimizeDeps: { include: ['ndarray', 'ndarray-fft'] },
+  worker: { format: 'es' },
+  server: { fs: { allow: [at('.')] } },
+  build: {
+    outDir: at(isSsrBuild ? './dist/headless' : './dist/page'),
+    emptyOutDir: true,
+    target: 'es2022',
+    ...(isSsrBuild ? { ssr: true } : {}),
+  },
+  preview: { port: 4173 },
+  test: {
+    root: at('.'),
+    include: ['test/**/*.test.ts'],
+    exclude: ['**/node_modules/**', 'dist/**'],
+    environment: 'node',
+    alias: {},
+    testTimeout: 30_000,
+    hookTimeout: 60_000,
+    maxWorkers: 2,
+    fileParallelism: true,
+  },
+}))
