@@ -1,0 +1,62 @@
+import type { Candidates } from './core/candidates.ts'
+import type { Detrended } from './core/detrend.ts'
+import type { Ladder, Span } from './core/ladder.ts'
+import type { Profile, ProfileRecipe } from './core/profile.ts'
+import type { Recipe } from './core/recipe.ts'
+import type { Orientation } from './core/scan.ts'
+import type { Transect } from './core/transect.ts'
+import type { FaultCode } from './check.ts'
+import type { ScanInfo } from './reading/scanFile.ts'
+import type { Region } from './units.ts'
+import type { Progress } from './work.ts'
+
+/** Raised whenever a request or a reply changes its form; page and worker must agree. */
+export const protocolVersion = 1
+
+/** How a scan is shown; never touches the profile's values. Levels in the file's units. */
+export interface Display {
+  black: number
+  white: number
+  gamma: number
+  channel: 'colour' | 'red' | 'green' | 'blue' | 'grey'
+}
+
+/** One type map: every job's request and reply. Scans are named by their SHA-256 once opened. */
+export interface Jobs {
+  openScan: { request: { file: Blob; name: string }; reply: ScanInfo }
+  closeScan: { request: { scan: string }; reply: null }
+  /** A region of a level, turned upright, as RGBA for the screen. */
+  tile: {
+    request: { scan: string; level: number; region: Region; orientation: Orientation; display: Display }
+    reply: { width: number; height: number; rgba: Uint8ClampedArray<ArrayBuffer> }
+  }
+  profile: { request: { scan: string; transect: Transect; recipe: ProfileRecipe }; reply: Profile }
+  ladder: {
+    request: { profile: Profile; spans: Span[]; fixed: Float64Array; recipe: Recipe }
+    reply: { detrended: Detrended; candidates: Candidates; ladder: Ladder }
+  }
+}
+
+export type JobKind = keyof Jobs
+export type Request<K extends JobKind> = Jobs[K]['request']
+export type Reply<K extends JobKind> = Jobs[K]['reply']
+
+/** What a job came to grief on: see check.ts. */
+export interface Failure {
+  code: FaultCode
+  field: string
+  value: string
+  message: string
+}
+
+export type ToWorker =
+  | { type: 'run'; job: number; kind: JobKind; request: Request<JobKind> }
+  | { type: 'cancel'; job: number }
+
+/** After any number of `progress`, exactly one of `done`, `failed`, `cancelled` for each job. */
+export type FromWorker =
+  | { type: 'ready'; protocol: number }
+  | { type: 'progress'; job: number; progress: Progress }
+  | { type: 'done'; job: number; reply: Reply<JobKind> }
+  | { type: 'failed'; job: number; failure: Failure }
+  | { type: 'cancelled'; job: number }
