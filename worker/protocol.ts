@@ -1,5 +1,6 @@
 import type { Candidates } from './core/candidates.ts'
 import type { Detrended } from './core/detrend.ts'
+import type { Display } from './core/display.ts'
 import type { Ladder, Span } from './core/ladder.ts'
 import type { Profile, ProfileRecipe } from './core/profile.ts'
 import type { Recipe } from './core/recipe.ts'
@@ -13,18 +14,12 @@ import type { Progress } from './work.ts'
 /** Raised whenever a request or a reply changes its form; page and worker must agree. */
 export const protocolVersion = 1
 
-/** How a scan is shown; never touches the profile's values. Levels in the file's units. */
-export interface Display {
-  black: number
-  white: number
-  gamma: number
-  channel: 'colour' | 'red' | 'green' | 'blue' | 'grey'
-}
-
 /** One type map: every job's request and reply. Scans are named by their SHA-256 once opened. */
 export interface Jobs {
   openScan: { request: { file: Blob; name: string }; reply: ScanInfo }
   closeScan: { request: { scan: string }; reply: null }
+  /** A display that fills the screen's range with the scan's own values. */
+  stretch: { request: { scan: string }; reply: Display }
   /** A region of a level, turned upright, as RGBA for the screen. */
   tile: {
     request: { scan: string; level: number; region: Region; orientation: Orientation; display: Display }
@@ -50,8 +45,7 @@ export interface Failure {
 }
 
 export type ToWorker =
-  | { type: 'run'; job: number; kind: JobKind; request: Request<JobKind> }
-  | { type: 'cancel'; job: number }
+  { type: 'run'; job: number; kind: JobKind; request: Request<JobKind> } | { type: 'cancel'; job: number }
 
 /** After any number of `progress`, exactly one of `done`, `failed`, `cancelled` for each job. */
 export type FromWorker =
