@@ -11,8 +11,10 @@ export interface Band {
 }
 
 export interface BandRules {
-  /** Rows beyond both ends of each band, and pixels beyond both sides of the width. */
+  /** Rows beyond both ends of each band. */
   margin: number
+  /** Pixels beyond both sides of the width. */
+  side: number
   /** Bands begin and end at these rows, the number of rows last; sorted. */
   cuts: ArrayLike<number>
   /** About this many pixels a band at most, where the cuts allow it. */
@@ -24,14 +26,14 @@ const pixelsPerBand = 4 << 20
 
 /** The rectangles of the scan that a profile along a transect is read from, from young to old. */
 export function regionsOf(shape: ScanShape, transect: Transect, rules: BandRules): Band[] {
-  const { margin, cuts } = rules
+  const { cuts } = rules
   const bands: Band[] = []
   let first = 0
   while (first < cuts.length - 1) {
     let last = first + 1
-    let region = regionOfRows(shape, transect, cuts[first], cuts[last], margin)
+    let region = regionOfRows(shape, transect, cuts[first], cuts[last], rules)
     while (last < cuts.length - 1) {
-      const wider = regionOfRows(shape, transect, cuts[first], cuts[last + 1], margin)
+      const wider = regionOfRows(shape, transect, cuts[first], cuts[last + 1], rules)
       if (wider.width * wider.height > (rules.pixels ?? pixelsPerBand)) break
       region = wider
       last++
@@ -43,9 +45,9 @@ export function regionsOf(shape: ScanShape, transect: Transect, rules: BandRules
 }
 
 /** The smallest rectangle of whole pixels, inside the scan, that holds the path between two distances in its full width. */
-function regionOfRows(shape: ScanShape, transect: Transect, from: number, to: number, margin: number): Region {
+function regionOfRows(shape: ScanShape, transect: Transect, from: number, to: number, rules: BandRules): Region {
   const { points } = transect
-  const half = transect.width / 2 + margin
+  const half = transect.width / 2 + rules.side
   let left = Infinity
   let right = -Infinity
   let top = Infinity
@@ -64,7 +66,7 @@ function regionOfRows(shape: ScanShape, transect: Transect, from: number, to: nu
     const stop = Math.min(to, end)
     if (start <= stop) {
       // Rows sheared along the bedding run on in their own direction, beyond corners and ends too.
-      for (const distance of [start - margin, stop + margin]) {
+      for (const distance of [start - rules.margin, stop + rules.margin]) {
         const x = points[i - 1].x + (distance - walked) * along.x
         const y = points[i - 1].y + (distance - walked) * along.y
         include(x - half * across.x, y - half * across.y)

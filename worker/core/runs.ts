@@ -26,3 +26,13 @@ export type PerRow = number | ArrayLike<number>
 export function atRow(value: PerRow, row: number): number {
   return typeof value === 'number' ? value : value[row]
 }
+
+/** Cuts [0 … total] into parts of nearly equal size: [parts + 1] whole numbers that read the same from either end. */
+export function evenCuts(total: number, parts: number): Int32Array {
+  const cuts = new Int32Array(parts + 1)
+  for (let part = 0; part <= parts / 2; part++) {
+    cuts[part] = Math.floor((part * total) / parts + 0.5)
+    cuts[parts - part] = total - cuts[part]
+  }
+  return cuts
+}
