@@ -63,6 +63,8 @@ export type Texture = 'hatch' | 'stipple' | 'rule'
  * Level and upright hairlines are moved to whole device pixels where there are such, so painters need not round.
  */
 export interface Surface {
+  /** Device pixels per unit: how fine a picture has to be, how thin a row can be told apart. */
+  readonly pixelRatio: number
   line(x1: number, y1: number, x2: number, y2: number, stroke: Stroke): void
   /** Many separate lines in one stroke: x1, y1, x2, y2 for each. */
   lines(ends: ArrayLike<number>, stroke: Stroke): void
