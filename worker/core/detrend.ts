@@ -2,7 +2,7 @@ import type { Work } from '../work.ts'
 import { gaussianSmooth, savitzkyGolay } from './smoothing.ts'
 import { movingMean, movingMedian } from './movingWindow.ts'
 import type { Profile } from './profile.ts'
-import { typicalThickness } from './typicalThickness.ts'
+import { trackThickness } from './thicknessTrack.ts'
 
 export interface DetrendRecipe {
   method: 'moving-median' | 'moving-mean' | 'loess' | 'high-pass' | 'none'
@@ -35,7 +35,7 @@ const smoothingShare = 0.2
 export function* detrendProfile(profile: Profile, recipe: DetrendRecipe): Work<Detrended> {
   const { intensity } = profile
   yield { stage: 'thickness', done: 0, total: 3 }
-  const thickness = typicalThickness(intensity)
+  const thickness = trackThickness(profile)
   yield { stage: 'trend', done: 1, total: 3 }
   const half = Int32Array.from(thickness, (local) =>
     Math.max(1, Math.round((recipe.window ?? layersPerWindow * local) / 2)),
