@@ -18,10 +18,10 @@ export interface Ribbon {
 /** The rows of one band. */
 export interface Strip {
   /**
-   * Fills `values` with the samples of a row sheared along beds that fall by `slope` pixels for each pixel to the right;
-   * NaN where there is no usable pixel.
+   * The samples of a row sheared along beds that fall by `slope` pixels for each pixel to the right, [samples across];
+   * NaN where there is no usable pixel. They are put into `values`, or lie in the strip itself: read, never written.
    */
-  sample(row: number, slope: number, values: Float64Array): void
+  sample(row: number, slope: number, values: Float32Array): Float32Array
 }
 
 /** Straight transects along the scan's own rows or columns give its pixels as they are; all others are interpolated. */
@@ -82,8 +82,7 @@ function straightRibbon(transect: Transect): Ribbon {
       sample(row, slope, values) {
         const at = row - firstRow
         if (slope === 0 && phase === 0) {
-          for (let k = 0, from = at * count; k < count; k++, from++) values[k] = data[from]
-          return
+          return data.subarray(at * count, (at + 1) * count)
         }
         for (let k = 0; k < count; k++) {
           const place = at + phase + offsets[k] * slope
@@ -93,6 +92,7 @@ function straightRibbon(transect: Transect): Ribbon {
           const value = data[from]
           values[k] = share === 0 ? value : value + share * (data[from + count] - value)
         }
+        return values
       },
     }
   }
@@ -129,6 +129,7 @@ function obliqueRibbon(transect: Transect): Ribbon {
           const y = centre.y + offsets[k] * across.y + down * along.y
           values[k] = bilinear(plane, x, y)
         }
+        return values
       },
     }
   }

@@ -56,16 +56,17 @@ export function gradientsOf(
   }
 }
 
+/** Both kernels read the same from either end but for the sign of a derivative: the two halves are taken together. */
 function correlateRows(raster: Float32Array, rows: number, columns: number, kernel: Float64Array): Float32Array {
   const radius = (kernel.length - 1) / 2
+  const sign = kernel[0] < 0 ? -1 : 1
   const out = new Float32Array(raster.length).fill(NaN)
   for (let row = 0; row < rows; row++) {
     const start = row * columns
-    for (let column = radius; column < columns - radius; column++) {
-      let sum = 0
-      const from = start + column - radius
-      for (let k = 0; k < kernel.length; k++) sum += kernel[k] * raster[from + k]
-      out[start + column] = sum
+    for (let column = start + radius; column < start + columns - radius; column++) {
+      let sum = kernel[radius] * raster[column]
+      for (let k = 1; k <= radius; k++) sum += kernel[radius + k] * (raster[column + k] + sign * raster[column - k])
+      out[column] = sum
     }
   }
   return out
@@ -73,16 +74,15 @@ function correlateRows(raster: Float32Array, rows: number, columns: number, kern
 
 function correlateColumns(raster: Float32Array, rows: number, columns: number, kernel: Float64Array): Float32Array {
   const radius = (kernel.length - 1) / 2
+  const sign = kernel[0] < 0 ? -1 : 1
   const out = new Float32Array(raster.length).fill(NaN)
-  const sums = new Float64Array(columns)
-  for (let row = radius; row < rows - radius; row++) {
-    sums.fill(0)
-    for (let k = 0; k < kernel.length; k++) {
-      const weight = kernel[k]
-      const from = (row + k - radius) * columns
-      for (let column = 0; column < columns; column++) sums[column] += weight * raster[from + column]
+  const end = (rows - radius) * columns
+  for (let at = radius * columns; at < end; at++) {
+    let sum = kernel[radius] * raster[at]
+    for (let k = 1, step = columns; k <= radius; k++, step += columns) {
+      sum += kernel[radius + k] * (raster[at + step] + sign * raster[at - step])
     }
-    out.set(sums, row * columns)
+    out[at] = sum
   }
   return out
 }

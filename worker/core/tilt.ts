@@ -10,7 +10,7 @@ const sigmaAlong = 1.5
 /** The same across, in merged samples. */
 const sigmaAcross = 1.25
 /** Neighbouring samples of a row are merged to this many at least: the bedding changes slowly across, and time is saved. */
-const leastMerged = 48
+const leastMerged = 32
 /** A strip of fewer samples shows no tilt worth following: its edges move by less than two pixels. */
 const leastSamples = 12
 /** A block is cut into this many cells across, each with a direction of its own, so that a crack or the core's edge spoils one. */
@@ -51,9 +51,9 @@ export function tiltMeter(cuts: Int32Array, offsets: Float64Array): TiltMeter {
     const from = cuts[first] - tiltReach
     const rows = cuts[last] + tiltReach - from
     const raster = new Float32Array(rows * columns)
-    const values = new Float64Array(offsets.length)
+    const scratch = new Float32Array(offsets.length)
     for (let row = 0; row < rows; row++) {
-      strip.sample(from + row, 0, values)
+      const values = strip.sample(from + row, 0, scratch)
       for (let column = 0; column < columns; column++) {
         let sum = 0
         for (let k = column * merge; k < (column + 1) * merge; k++) sum += values[k]
