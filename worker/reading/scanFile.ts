@@ -1,6 +1,6 @@
 import type { ScanShape } from '../core/scan.ts'
 import type { Region } from '../units.ts'
-import type { Samples } from '../work.ts'
+import type { Progress, Samples } from '../work.ts'
 
 /** Bytes on demand: a file, a Blob, or memory. Reading past the end rejects with a Fault that names the place. */
 export interface ByteSource {
@@ -41,5 +41,7 @@ export interface Scan {
   readonly info: ScanInfo
   /** Samples of a region at a level, in that level's pixels; the region must lie inside the level. */
   readRegion(region: Region, level?: number): Promise<Samples>
+  /** Makes the levels that the file does not hold, where there are any to make; readRegion does so too when first asked for one, but without progress. */
+  buildOverview?(onProgress?: (progress: Progress) => void, signal?: AbortSignal): Promise<void>
   close(): void
 }

@@ -1,0 +1,14 @@
+/** What the platform does for the readers: a browser by its image decoder, a test in Node by another library. */
+export interface Decoders {
+  /**
+   * Decodes a whole JPEG or WebP that carries no metadata to 8-bit samples of shape [height, width, channels],
+   * without colour management, turning or premultiplication. Rejects where the data cannot be decoded.
+   */
+  decodeImage(file: Blob, shape: DecodedShape): Promise<Uint8Array>
+}
+
+export interface DecodedShape {
+  width: number
+  height: number
+  channels: 1 | 3 | 4
+}

@@ -1,0 +1,59 @@
+import { checkDimensions, checkWholeBytes } from './limits.ts'
+import { readJpegLayout } from './jpeg.ts'
+import type { JpegLayout } from './jpeg.ts'
+import { pagedSource } from './bytes.ts'
+import { readPngLayout } from './png.ts'
+import type { PngLayout } from './png.ts'
+import type { ByteSource, ScanInfo } from './scanFile.ts'
+import { sniff } from './sniff.ts'
+import { readTiffLayout } from './tiff.ts'
+import type { TiffLayout } from './tiff.ts'
+import { readWebpLayout } from './webp.ts'
+import type { WebpLayout } from './webp.ts'
+
+/** All that a scan's headers say, checked: the same for the page and for the headless command. No pixel is decoded for it. */
+export type Description = { info: Omit<ScanInfo, 'sha256' | 'levels'> } & (
+  | { format: 'png'; layout: PngLayout }
+  | { format: 'jpeg'; layout: JpegLayout }
+  | { format: 'webp'; layout: WebpLayout }
+  | { format: 'tiff'; layout: TiffLayout }
+)
+
+/** Finds out what a file is and whether it is whole. Throws a Fault that says what is wrong with it and what to do. */
+export async function describeScan(file: ByteSource, name: string): Promise<Description> {
+  const source = pagedSource(file)
+  const { format, notes } = await sniff(source, name)
+  const named = { name, bytes: file.size }
+  if (format === 'tiff') {
+    const layout = await readTiffLayout(source)
+    const { width, height, channels, bits } = layout.levels[0].image
+    const shape = { width, height, channels, bits, resolution: layout.resolution }
+    return { format, layout, info: { ...named, ...shape, format, notes: [...notes, ...layout.notes] } }
+  }
+  if (format === 'png') {
+    const layout = await readPngLayout(source)
+    const { width, height, channels, bits, resolution } = layout
+    const shape = { width, height, channels, bits, resolution }
+    return {
+      format,
+      layout,
+      info: { ...named, ...shape, format, notes: [...notes, ...layout.notes, ...alphaNotes(channels)] },
+    }
+  }
+  const described =
+    format === 'jpeg'
+      ? { format, layout: await readJpegLayout(source) }
+      : { format, layout: await readWebpLayout(source) }
+  const { width, height, channels, resolution } = described.layout
+  checkDimensions(width, height, true)
+  checkWholeBytes(width, height, channels, 8)
+  const shape = { width, height, channels, bits: 8 as const, resolution }
+  return {
+    ...described,
+    info: { ...named, ...shape, format, notes: [...notes, ...described.layout.notes, ...alphaNotes(channels)] },
+  }
+}
+
+function alphaNotes(channels: number): string[] {
+  return channels === 2 || channels === 4 ? ['the file has an alpha channel; it is not used in profiles'] : []
+}

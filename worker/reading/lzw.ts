@@ -1,0 +1,116 @@
+import { damaged } from './tiffDirectory.ts'
+
+const clearCode = 256
+const endCode = 257
+const mostCodes = 4096
+/** No string of the table is longer; an output buffer needs this much room behind its limit. */
+export const longestLzwString = mostCodes
+
+/**
+ * LZW as in TIFF 6.0, section 13: codes of 9 to 12 bits, most significant bit first, widened one code early.
+ *
+ * A string of the table is the string before it and one byte more, and both were just written: each is therefore kept as a
+ * place in the output and a length, and decoding is copying. The decoder stops when input or output run out and goes on
+ * from there, so that a strip of a gigabyte passes through a small buffer.
+ */
+export class LzwDecoder {
+  /** Output and how much of it is filled. `limit` bytes are asked for; up to a string more may be written. */
+  output: Uint8Array
+  filled = 0
+  finished = false
+  private readonly starts = new Int32Array(mostCodes)
+  private readonly lengths = new Int32Array(mostCodes)
+  private next = endCode + 1
+  private width = 9
+  private buffer = 0
+  private bits = 0
+  private previousStart = -1
+  private previousLength = 0
+  private historyStart = 0
+
+  constructor(output: Uint8Array) {
+    this.output = output
+  }
+
+  /** Decodes input[from, to) until the output holds `limit` bytes or the input ends; returns where the input stands. */
+  decode(input: Uint8Array, from: number, to: number, limit: number): number {
+    const { output, starts, lengths } = this
+    let { filled, next, width, buffer, bits, previousStart, previousLength } = this
+    let at = from
+    while (filled < limit) {
+      while (bits < width && at < to) {
+        buffer = (buffer << 8) | input[at++]
+        bits += 8
+      }
+      if (bits < width) break
+      bits -= width
+      const code = (buffer >>> bits) & ((1 << width) - 1)
+      if (code === clearCode) {
+        next = endCode + 1
+        width = 9
+        previousStart = -1
+        this.historyStart = filled
+        continue
+      }
+      if (code === endCode) {
+        this.finished = true
+        break
+      }
+      if (previousStart >= 0 && next < mostCodes) {
+        starts[next] = previousStart
+        lengths[next] = previousLength + 1
+        next++
+        if (next === (1 << width) - 1 && width < 12) width++
+      }
+      if (code < clearCode) {
+        previousLength = 1
+        previousStart = filled
+        output[filled++] = code
+      } else {
+        if (code >= next) throw damaged('LZW data', code, `names code ${code} before it exists`)
+        let source = starts[code]
+        previousLength = lengths[code]
+        previousStart = filled
+        const end = filled + previousLength
+        if (previousLength > 24 && source + previousLength <= filled) {
+          output.copyWithin(filled, source, source + previousLength)
+          filled = end
+        } else {
+          while (filled < end) output[filled++] = output[source++]
+        }
+      }
+    }
+    Object.assign(this, { filled, next, width, buffer, bits, previousStart, previousLength })
+    return at
+  }
+
+  /** Hands over the first `count` bytes of the output and goes on in a new one that starts with what strings still refer to. */
+  take(count: number, capacity: number): Uint8Array {
+    const taken = this.output.subarray(0, count)
+    const keepFrom = Math.min(this.historyStart, count)
+    const kept = this.output.subarray(keepFrom, this.filled)
+    const output = new Uint8Array(Math.max(capacity, kept.length) + longestLzwString)
+    output.set(kept)
+    for (let code = endCode + 1; code < this.next; code++) this.starts[code] -= keepFrom
+    if (this.previousStart >= 0) this.previousStart -= keepFrom
+    this.historyStart -= keepFrom
+    this.filled -= keepFrom
+    this.output = output
+    return taken
+  }
+}
+
+/** One whole strip or tile of a known unpacked length. */
+export function unpackLzw(packed: Uint8Array, length: number): Uint8Array {
+  if (packed[0] === 0 && (packed[1] & 1) === 1) {
+    throw damaged('LZW data', packed[0], 'is in the reversed bit order of TIFF 5 and older, which is not read')
+  }
+  const decoder = new LzwDecoder(new Uint8Array(length + longestLzwString))
+  decoder.decode(packed, 0, packed.length, length)
+  if (decoder.filled < length) throw tooShort('LZW', decoder.filled, length)
+  return decoder.output.subarray(0, length)
+}
+
+export function tooShort(compression: string, unpacked: number, expected: number) {
+  return damaged(`${compression} data`, unpacked, `unpacks to ${unpacked} bytes where ${expected} are needed`)
+}

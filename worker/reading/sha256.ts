@@ -1,0 +1,152 @@
+import type { Progress } from '../work.ts'
+import type { ByteSource } from './scanFile.ts'
+
+/** Bytes hashed between two turns of the event loop: about 15 ms of work. */
+const sliceBytes = 4 << 20
+
+/** First 32 bits of the fractional parts of the cube roots of the first 64 primes (FIPS 180-4, section 4.2.2). */
+const roundConstants = Int32Array.from([
+  0x428a2f98, 0x71374491, 0xb5c0fbcf, 0xe9b5dba5, 0x3956c25b, 0x59f111f1, 0x923f82a4, 0xab1c5ed5, 0xd807aa98,
+  0x12835b01, 0x243185be, 0x550c7dc3, 0x72be5d74, 0x80deb1fe, 0x9bdc06a7, 0xc19bf174, 0xe49b69c1, 0xefbe4786,
+  0x0fc19dc6, 0x240ca1cc, 0x2de92c6f, 0x4a7484aa, 0x5cb0a9dc, 0x76f988da, 0x983e5152, 0xa831c66d, 0xb00327c8,
+  0xbf597fc7, 0xc6e00bf3, 0xd5a79147, 0x06ca6351, 0x14292967, 0x27b70a85, 0x2e1b2138, 0x4d2c6dfc, 0x53380d13,
+  0x650a7354, 0x766a0abb, 0x81c2c92e, 0x92722c85, 0xa2bfe8a1, 0xa81a664b, 0xc24b8b70, 0xc76c51a3, 0xd192e819,
+  0xd6990624, 0xf40e3585, 0x106aa070, 0x19a4c116, 0x1e376c08, 0x2748774c, 0x34b0bcb5, 0x391c0cb3, 0x4ed8aa4a,
+  0x5b9cca4f, 0x682e6ff3, 0x748f82ee, 0x78a5636f, 0x84c87814, 0x8cc70208, 0x90befffa, 0xa4506ceb, 0xbef9a3f7,
+  0xc67178f2,
+])
+
+/**
+ * SHA-256 (FIPS 180-4) fed piece by piece: the platform's own digest wants the whole message in memory at once,
+ * which a scan of a gigabyte is too large for.
+ */
+export class Sha256 {
+  private readonly state = Int32Array.from([
+    0x6a09e667, 0xbb67ae85, 0x3c6ef372, 0xa54ff53a, 0x510e527f, 0x9b05688c, 0x1f83d9ab, 0x5be0cd19,
+  ])
+  private readonly schedule = new Int32Array(64)
+  private readonly pending = new Uint8Array(64)
+  private pendingLength = 0
+  private total = 0
+
+  update(bytes: Uint8Array): this {
+    this.total += bytes.length
+    let at = 0
+    if (this.pendingLength > 0) {
+      at = Math.min(64 - this.pendingLength, bytes.length)
+      this.pending.set(bytes.subarray(0, at), this.pendingLength)
+      this.pendingLength += at
+      if (this.pendingLength < 64) return this
+      compress(this.state, this.schedule, this.pending, 0, 64)
+      this.pendingLength = 0
+    }
+    const whole = at + ((bytes.length - at) & ~63)
+    compress(this.state, this.schedule, bytes, at, whole)
+    this.pending.set(bytes.subarray(whole))
+    this.pendingLength = bytes.length - whole
+    return this
+  }
+
+  /** The digest in lower-case hexadecimal. The object must not be fed afterwards. */
+  hex(): string {
+    const tail = new Uint8Array(this.pendingLength < 56 ? 64 : 128)
+    tail.set(this.pending.subarray(0, this.pendingLength))
+    tail[this.pendingLength] = 0x80
+    const view = new DataView(tail.buffer)
+    view.setUint32(tail.length - 8, Math.floor(this.total / 0x20000000))
+    view.setUint32(tail.length - 4, (this.total << 3) >>> 0)
+    compress(this.state, this.schedule, tail, 0, tail.length)
+    return Array.from(this.state, (word) => (word >>> 0).toString(16).padStart(8, '0')).join('')
+  }
+}
+
+/** SHA-256 of a whole file, read slice by slice; each read gives the event loop a turn. */
+export async function hashSource(
+  source: ByteSource,
+  onProgress?: (progress: Progress) => void,
+  signal?: AbortSignal,
+): Promise<string> {
+  const hash = new Sha256()
+  let next = source.read(0, Math.min(sliceBytes, source.size))
+  for (let at = 0; at < source.size; at += sliceBytes) {
+    signal?.throwIfAborted()
+    const bytes = await next
+    const after = at + sliceBytes
+    // The next slice is on its way from disk while this one is hashed.
+    if (after < source.size) next = source.read(after, Math.min(sliceBytes, source.size - after))
+    hash.update(bytes)
+    onProgress?.({ stage: 'hash', done: Math.min(after, source.size), total: source.size })
+  }
+  return hash.hex()
+}
+
+/**
+ * The compression function of FIPS 180-4, section 6.2.2, over the 64-byte blocks of bytes[from, to).
+ * Eight rounds stand written out, so that the eight working variables change roles instead of being moved: four times the speed.
+ */
+function compress(state: Int32Array, w: Int32Array, bytes: Uint8Array, from: number, to: number): void {
+  const k = roundConstants
+  for (let at = from; at < to; at += 64) {
+    expand(w, bytes, at)
+    let a = state[0]
+    let b = state[1]
+    let c = state[2]
+    let d = state[3]
+    let e = state[4]
+    let f = state[5]
+    let g = state[6]
+    let h = state[7]
+    for (let i = 0; i < 64; i += 8) {
+      h = (h + (rotate(e, 26) ^ rotate(e, 21) ^ rotate(e, 7)) + (g ^ (e & (f ^ g))) + k[i] + w[i]) | 0
+      d = (d + h) | 0
+      h = (h + (rotate(a, 30) ^ rotate(a, 19) ^ rotate(a, 10)) + ((a & b) | (c & (a | b)))) | 0
+      g = (g + (rotate(d, 26) ^ rotate(d, 21) ^ rotate(d, 7)) + (f ^ (d & (e ^ f))) + k[i + 1] + w[i + 1]) | 0
+      c = (c + g) | 0
+      g = (g + (rotate(h, 30) ^ rotate(h, 19) ^ rotate(h, 10)) + ((h & a) | (b & (h | a)))) | 0
+      f = (f + (rotate(c, 26) ^ rotate(c, 21) ^ rotate(c, 7)) + (e ^ (c & (d ^ e))) + k[i + 2] + w[i + 2]) | 0
+      b = (b + f) | 0
+      f = (f + (rotate(g, 30) ^ rotate(g, 19) ^ rotate(g, 10)) + ((g & h) | (a & (g | h)))) | 0
+      e = (e + (rotate(b, 26) ^ rotate(b, 21) ^ rotate(b, 7)) + (d ^ (b & (c ^ d))) + k[i + 3] + w[i + 3]) | 0
+      a = (a + e) | 0
+      e = (e + (rotate(f, 30) ^ rotate(f, 19) ^ rotate(f, 10)) + ((f & g) | (h & (f | g)))) | 0
+      d = (d + (rotate(a, 26) ^ rotate(a, 21) ^ rotate(a, 7)) + (c ^ (a & (b ^ c))) + k[i + 4] + w[i + 4]) | 0
+      h = (h + d) | 0
+      d = (d + (rotate(e, 30) ^ rotate(e, 19) ^ rotate(e, 10)) + ((e & f) | (g & (e | f)))) | 0
+      c = (c + (rotate(h, 26) ^ rotate(h, 21) ^ rotate(h, 7)) + (b ^ (h & (a ^ b))) + k[i + 5] + w[i + 5]) | 0
+      g = (g + c) | 0
+      c = (c + (rotate(d, 30) ^ rotate(d, 19) ^ rotate(d, 10)) + ((d & e) | (f & (d | e)))) | 0
+      b = (b + (rotate(g, 26) ^ rotate(g, 21) ^ rotate(g, 7)) + (a ^ (g & (h ^ a))) + k[i + 6] + w[i + 6]) | 0
+      f = (f + b) | 0
+      b = (b + (rotate(c, 30) ^ rotate(c, 19) ^ rotate(c, 10)) + ((c & d) | (e & (c | d)))) | 0
+      a = (a + (rotate(f, 26) ^ rotate(f, 21) ^ rotate(f, 7)) + (h ^ (f & (g ^ h))) + k[i + 7] + w[i + 7]) | 0
+      e = (e + a) | 0
+      a = (a + (rotate(b, 30) ^ rotate(b, 19) ^ rotate(b, 10)) + ((b & c) | (d & (b | c)))) | 0
+    }
+    state[0] += a
+    state[1] += b
+    state[2] += c
+    state[3] += d
+    state[4] += e
+    state[5] += f
+    state[6] += g
+    state[7] += h
+  }
+}
+
+/** The message schedule of one block: 64 words. */
+function expand(w: Int32Array, bytes: Uint8Array, at: number): void {
+  for (let i = 0, p = at; i < 16; i++, p += 4) {
+    w[i] = (bytes[p] << 24) | (bytes[p + 1] << 16) | (bytes[p + 2] << 8) | bytes[p + 3]
+  }
+  for (let i = 16; i < 64; i++) {
+    const x = w[i - 15]
+    const y = w[i - 2]
+    const s0 = rotate(x, 25) ^ rotate(x, 14) ^ (x >>> 3)
+    const s1 = rotate(y, 15) ^ rotate(y, 13) ^ (y >>> 10)
+    w[i] = (w[i - 16] + s0 + w[i - 7] + s1) | 0
+  }
+}
+
+function rotate(word: number, left: number): number {
+  return (word << left) | (word >>> (32 - left))
+}
