@@ -93,14 +93,16 @@ function findEdge(signal: Float64Array, peaks: Peaks, i: number, rule: Candidate
 function steepest(signal: Float64Array, peak: number, base: number, direction: -1 | 1) {
   let best = peak
   let slope = 0
+  let lowest = signal[peak]
   for (let row = peak; row !== base; row += direction) {
     const step = signal[row] - signal[row + direction]
     if (step > slope) {
       slope = step
       best = row
     }
-    // The flank ends where the signal has turned up again by a good part of what it fell.
-    if (signal[peak] - signal[row] > 0.5 && step < -0.1) break
+    // The flank ends where the signal has turned up again by a good part of what it fell; the base may lie layers away.
+    lowest = Math.min(lowest, signal[row])
+    if (signal[row] - lowest > 0.3 * (signal[peak] - lowest)) break
   }
   const stepAt = (row: number) => signal[row] - signal[row + direction]
   const vertex = parabolaVertex(stepAt(best - direction), slope, stepAt(best + direction))
