@@ -20,7 +20,7 @@ import { inventedDates } from './dates.ts'
 import { layout } from './deformation.ts'
 import { drawPhotograph, type Picture } from './photograph.ts'
 import { drawRadiograph, radiographShrink } from './radiograph.ts'
-import { coringYear, drawRecord } from './record.ts'
+import { coringYear, drawRecord, recordSeed } from './record.ts'
 import { erosiveBases, mmPerPx, truthOf, type Truth } from './truth.ts'
 
 const folder = 'sample-images'
@@ -95,7 +95,7 @@ async function writeTables(facts: DemoFacts): Promise<void> {
   await writeFile(join(folder, 'tables', 'dates.csv'), header + dates.join(''))
 }
 
-const record = drawRecord(20190714)
+const record = drawRecord(recordSeed)
 const columns = columnsOf(record)
 const bases = erosiveBases(record)
 const width = Math.floor(record.length - 60)

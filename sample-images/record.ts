@@ -53,6 +53,9 @@ export const tephraYear = 1783
 const openCouplet = 15
 const yearCount = 421
 
+/** The seed of the demo core. */
+export const recordSeed = 20190714
+
 /** Beds and the years they fell into. */
 const beds = new Map<number, Omit<EventBed, 'at'>>([
   [1927, { name: 'flood turbidite', kind: 'turbidite', thickness: 104 }],
