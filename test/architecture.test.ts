@@ -24,13 +24,14 @@ function importsOf(file: string): Import[] {
   const statement =
     /(?:^|\n)\s*(import|export)\s+(type\s+)?(?:[^'"();]*?\sfrom\s+)?['"]([^'"]+)['"]|import\(\s*['"]([^'"]+)['"]\s*\)/g
   for (const match of text.matchAll(statement)) {
-    const specifier = match[3] ?? match[4]!
+    const [, , type, from, dynamic] = match as unknown as (string | undefined)[]
+    const specifier = from ?? dynamic ?? ''
     const target = specifier.startsWith('.')
       ? relative(root, resolve(root, dirname(file), specifier))
           .split(sep)
           .join('/')
       : specifier.replace(/^((?:@[^/]+\/)?[^/]+).*/, '$1')
-    found.push({ from: file, target, typeOnly: match[2] !== undefined })
+    found.push({ from: file, target, typeOnly: type !== undefined })
   }
   return found
 }
@@ -108,7 +109,7 @@ const allowed: Record<string, string[]> = {
 
 function isAllowed({ from, target, typeOnly }: Import, folder: string): boolean {
   if (target.startsWith(folder) || target.endsWith('.css')) return true
-  return allowed[folder]!.some((rule) => {
+  return allowed[folder].some((rule) => {
     const prefix = rule.replace(' (types)', '')
     const fits =
       target === prefix || (/[/:]$/.test(prefix) && target.startsWith(prefix)) || target.startsWith(`${prefix}/`)

@@ -16,6 +16,8 @@ export const protocolVersion = 1
 
 /** One type map: every job's request and reply. Scans are named by their SHA-256 once opened. */
 export interface Jobs {
+  /** The recipe a new section starts with; the page holds no copy of the defaults. */
+  defaultRecipe: { request: null; reply: Recipe }
   openScan: { request: { file: Blob; name: string }; reply: ScanInfo }
   closeScan: { request: { scan: string }; reply: null }
   /** A display that fills the screen's range with the scan's own values. */

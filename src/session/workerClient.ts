@@ -112,7 +112,7 @@ export class WorkerClient {
   ): Promise<Reply<K>> {
     if (this.#outstanding.has(job)) this.#port.postMessage({ type: 'run', job, kind, request })
     const final = await result
-    if (final.type === 'done') return final.reply as Reply<K>
+    if (final.type === 'done') return final.reply
     if (final.type === 'failed') throw new JobFailure(final.failure)
     throw new JobCancelled()
   }

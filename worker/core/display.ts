@@ -51,12 +51,12 @@ export function paintSamples(samples: Samples, display: Display, bits: number): 
     for (let column = 0; column < columns; column++, at += columnStride, out += 4) {
       if (grey) {
         // BT.709 weights, on the values as scanned: the screen's grey shows what the profile's luminance reads.
-        const value = 0.2126 * data[at + red]! + 0.7152 * data[at + green]! + 0.0722 * data[at + blue]!
+        const value = 0.2126 * data[at + red] + 0.7152 * data[at + green] + 0.0722 * data[at + blue]
         rgba[out] = rgba[out + 1] = rgba[out + 2] = tone[Math.round(value)]!
       } else {
-        rgba[out] = tone[data[at + red]!]!
-        rgba[out + 1] = tone[data[at + green]!]!
-        rgba[out + 2] = tone[data[at + blue]!]!
+        rgba[out] = tone[data[at + red]]!
+        rgba[out + 1] = tone[data[at + green]]!
+        rgba[out + 2] = tone[data[at + blue]]!
       }
       rgba[out + 3] = 255
     }
@@ -76,7 +76,7 @@ export function stretchedDisplay(samples: Samples, bits: number): Display {
   for (let row = 0; row < rows; row++) {
     for (let column = 0; column < columns; column++) {
       const at = samples.offset + row * rowStride + column * columnStride
-      for (let channel = 0; channel < colours; channel++) counts[samples.data[at + channel * channelStride]!]!++
+      for (let channel = 0; channel < colours; channel++) counts[samples.data[at + channel * channelStride]]++
     }
   }
   const total = rows * columns * colours
@@ -88,7 +88,7 @@ export function stretchedDisplay(samples: Samples, bits: number): Display {
 function percentile(counts: Uint32Array, rank: number): number {
   let seen = 0
   for (let value = 0; value < counts.length; value++) {
-    seen += counts[value]!
+    seen += counts[value]
     if (seen > rank) return value
   }
   return counts.length - 1

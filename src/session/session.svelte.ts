@@ -1,0 +1,125 @@
+import type { Count, Section, SectionSpan, SectionTransect } from '../document/project.ts'
+import type { Cause } from '../document/transaction.ts'
+import { Autosave } from './autosave.svelte.ts'
+import { Counting } from './counting.svelte.ts'
+import { Detection } from './detection.svelte.ts'
+import { Notices } from './notices.svelte.ts'
+import { openDemo } from './demo.ts'
+import { ScanDesk, wordsOf } from './scanDesk.svelte.ts'
+import type { ScanKeeper } from './scanDesk.svelte.ts'
+import { Workbench } from './workbench.svelte.ts'
+import type { WorkerClient } from './workerClient.ts'
+
+/** The steps of the job, in its own order. */
+export const steps = [
+  { id: 'scan', name: 'Scan', purpose: 'Bring in scans, set scale, depth and transect' },
+  { id: 'count', name: 'Count', purpose: 'Confirm or edit the layers, year by year' },
+  { id: 'compare', name: 'Compare', purpose: 'What repeat counts say of the counting error' },
+  { id: 'date', name: 'Date', purpose: 'Tie the count to calendar years' },
+  { id: 'rates', name: 'Rates', purpose: 'Thickness and sedimentation per year' },
+  { id: 'report', name: 'Report', purpose: 'Save the project, figures and tables' },
+] as const
+export type StepId = (typeof steps)[number]['id']
+
+/** Everything that runs while the page is open, and which section, transect and count are at hand. */
+export class Session {
+  readonly notices = new Notices()
+  readonly autosave = new Autosave()
+  readonly client: WorkerClient
+  readonly workbench: Workbench
+  readonly desk: ScanDesk
+  readonly detection: Detection
+  readonly counting: Counting
+  step = $state<StepId>('scan')
+  #sectionId = $state('')
+  #countId = $state('')
+
+  constructor(client: WorkerClient, keeper: ScanKeeper) {
+    this.client = client
+    this.workbench = new Workbench(this.notices, this.autosave)
+    this.desk = new ScanDesk(client, keeper)
+    this.detection = new Detection(client)
+    this.counting = new Counting(this.workbench, this.detection, () => ({
+      count: this.count,
+      spans: this.spans,
+      cause: this.cause,
+    }))
+    this.autosave.onFailure = (words) => this.notices.trouble(words)
+  }
+
+  section: Section | null = $derived.by(() => {
+    const { sections } = this.workbench.project
+    return sections.find(({ id }) => id === this.#sectionId) ?? sections.at(0) ?? null
+  })
+  scan = $derived.by(() => this.desk.get(this.section?.scan.sha256))
+  /** Counts of the section at hand, oldest first. */
+  counts: readonly Count[] = $derived.by(() => {
+    const { project } = this.workbench
+    const own = new Set(project.transects.filter(({ section }) => section === this.section?.id).map(({ id }) => id))
+    return project.counts.filter(({ transect }) => own.has(transect))
+  })
+  count: Count | null = $derived(this.counts.find(({ id }) => id === this.#countId) ?? this.counts.at(-1) ?? null)
+  transect: SectionTransect | null = $derived.by(() => {
+    const { transects } = this.workbench.project
+    const own = transects.filter(({ section }) => section === this.section?.id)
+    return own.find(({ id }) => id === this.count?.transect) ?? own.at(0) ?? null
+  })
+  spans: readonly SectionSpan[] = $derived.by(() =>
+    this.workbench.project.spans.filter(({ transect }) => transect === this.transect?.id),
+  )
+  /** What the candidates are found in; null while the scan is not open. */
+  subject = $derived.by(() => {
+    if (!this.section || !this.transect || !this.scan) return null
+    const { points, width, tilt, masks } = this.transect
+    const spans = this.spans.map(({ from, to, kind }) => ({ from, to, kind }))
+    return { scan: this.scan.info.sha256, transect: { points, width, tilt, masks }, spans, recipe: this.section.recipe }
+  })
+  /** Other counts are out of sight while this one is made blind. */
+  blind = $derived(this.step === 'count' && (this.count?.blind ?? false))
+
+  /** What an accepted proposal came from: kept with it in the journal. */
+  cause: Cause | null = $derived.by(() => {
+    if (!this.section) return null
+    return {
+      job: 'ladder',
+      method: 'semi-Markov ladder 1',
+      recipe: JSON.parse(JSON.stringify(this.section.recipe)) as Cause['recipe'],
+      seed: null,
+      inputHash: this.section.scan.sha256,
+    }
+  })
+
+  /** Lays the first project on the bench: the last one worked on, or the demo. */
+  async start(): Promise<void> {
+    try {
+      await openDemo(this)
+    } catch (error) {
+      this.notices.trouble(`The demo could not be opened: ${wordsOf(error)}. You can still open your own scans.`)
+    }
+  }
+
+  choose(section: string): void {
+    this.#sectionId = section
+    this.#countId = ''
+    this.counting.escape()
+    this.counting.cursor = null
+  }
+
+  chooseCount(count: string): void {
+    this.#countId = count
+    this.counting.escape()
+    const counter = this.workbench.project.counters.find(({ id }) => id === this.count?.counter)
+    if (counter) this.workbench.author = counter.name
+  }
+
+  counterName(count: Count): string {
+    return this.workbench.project.counters.find(({ id }) => id === count.counter)?.name ?? count.counter
+  }
+
+  /** Name of a count as it is written everywhere: the counter, and the pass where there is more than one. */
+  countName(count: Count): string {
+    const name = this.counterName(count)
+    const passes = this.counts.filter(({ counter }) => counter === count.counter).length
+    return passes > 1 || count.pass > 1 ? `${name} ${count.pass}` : name
+  }
+}
