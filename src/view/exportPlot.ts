@@ -41,6 +41,24 @@ export function exportSvg<Data>(
 }
 
 /**
+ * A figure as an `svg` element for the page, in CSS pixels and the page's own type. `prefix` keeps the ids of several
+ * figures apart.
+ */
+export function inlineSvg<Data>(
+  painter: Painter<Data>,
+  data: Data,
+  width: number,
+  height: number,
+  theme: Theme,
+  { title, prefix = '' }: { title?: string; prefix?: string } = {},
+): string {
+  const surface = svgSurface(prefix)
+  painter(surface, { x: 0, y: 0, width, height }, data, theme)
+  const name = title === undefined ? '' : ` aria-label="${escapeXml(title)}"`
+  return `<svg width="${round(width)}" height="${round(height)}" viewBox="0 0 ${round(width)} ${round(height)}" font-family="${escapeXml(theme.font)}" role="img"${name}>${surface.markup()}</svg>`
+}
+
+/**
  * A figure as a PNG with its resolution written into it, so that it is placed at its size in millimetres.
  * `dotsPerInch` is 300 for print, 600 for line work.
  */

@@ -18,27 +18,13 @@ export interface SpanHit {
 
 /** The span at a height and where it was grasped; ends go before bodies, and of bodies that overlap the shorter one. */
 export function hitSpan(view: Viewport, spans: readonly StripSpan[], y: number, tolerance = 5): SpanHit | null {
-  let best: SpanHit | null = null
-  let least = tolerance
-  spans.forEach((span, index) => {
-    for (const part of ['from', 'to'] as const) {
-      const distance = Math.abs(toScreen(view, span[part]) - y)
-      if (distance <= least) {
-        least = distance
-        best = { index, part }
-      }
-    }
-  })
-  if (best) return best
+  const ends = spans.flatMap(({ from, to }) => [Math.abs(toScreen(view, from) - y), Math.abs(toScreen(view, to) - y)])
+  const end = closest(ends, tolerance)
+  if (end >= 0) return { index: end >> 1, part: end % 2 === 0 ? 'from' : 'to' }
   const axis = toAxis(view, y)
-  let shortest = Infinity
-  spans.forEach(({ from, to }, index) => {
-    if (axis >= from && axis <= to && to - from < shortest) {
-      shortest = to - from
-      best = { index, part: 'body' }
-    }
-  })
-  return best
+  const lengths = spans.map(({ from, to }) => (axis >= from && axis <= to ? to - from : Infinity))
+  const body = closest(lengths, Number.MAX_VALUE)
+  return body >= 0 ? { index: body, part: 'body' } : null
 }
 
 /** The handle of a transect under a point of its column (CSS pixels from the column's left and the view's top). Points go before edges, edges before the path. */

@@ -37,7 +37,8 @@ export interface Theme {
 /** Grotesques whose figures are all of one width, so that numbers on a canvas stand in columns. */
 const font = '"Helvetica Neue", Helvetica, Arial, "Liberation Sans", "Noto Sans", sans-serif'
 const size = { text: 12, small: 11, tiny: 9.5 }
-const stroke = { hair: 1, thin: 1.25, strong: 2 }
+// 1.2 is one device pixel on a plain screen and two on a fine one; 1.25 would be rounded up to three there.
+const stroke = { hair: 1, thin: 1.2, strong: 2 }
 
 export const lightTheme: Theme = {
   name: 'light',

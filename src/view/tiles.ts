@@ -36,6 +36,18 @@ export function trueAcross(view: Viewport, breadth: number, width: number, centr
   return heldInside({ centre, scale: view.scale }, breadth, width)
 }
 
+/** Like `trueAcross`, but the breadth is squeezed where a transect's band would not fit into the column with its marks beside it. */
+export function bandAcross(
+  view: Viewport,
+  breadth: number,
+  width: number,
+  band: { centre: number; width: number },
+): Across {
+  const marks = 32
+  const scale = Math.min(view.scale, Math.max(1, width - marks) / Math.max(1, band.width))
+  return heldInside({ centre: band.centre, scale }, breadth, width)
+}
+
 /** The whole breadth squeezed or stretched into the column. */
 export function wholeAcross(breadth: number, width: number): Across {
   return { centre: breadth / 2, scale: width / Math.max(1, breadth) }

@@ -41,18 +41,43 @@ export function eachRow(
   }
 }
 
+/** Half width of the weighting by which a density is taken, CSS pixels: wide enough that single marks do not show as a comb. */
+const densityReach = 12
+
+/** Marks per CSS pixel that fill a lane: two and a half times the column's own mean, whatever part of it is on screen. */
+export function fullDensity(view: Viewport, position: ArrayLike<number>): number {
+  const last = position.length - 1
+  return last < 1 ? 1 : (2.5 * last) / ((position[last] - position[0]) * view.scale)
+}
+
 /**
  * Marks per CSS pixel around each screen row, relative to `full` marks per pixel, 0 to 1; rows are `step` CSS pixels apart.
- * The count is taken over a short stretch on both sides, or else rows with two and rows with three marks would flicker.
+ * Every mark counts with a weight that falls off evenly on both sides.
  */
 export function densityRows(view: Viewport, position: ArrayLike<number>, full: number, step: number): Float64Array {
-  const reach = 4
   const rows = new Float64Array(Math.max(0, Math.ceil(view.height / step)))
+  const reach = Math.max(1, Math.round(densityReach / step))
+  // Marks in each row, with as many rows beyond either edge as the weighting reaches.
+  const counts = new Float64Array(rows.length + 2 * reach)
+  let from = lowerBound(position, (-reach * step) / view.scale + view.top)
+  for (let k = 0; k < counts.length; k++) {
+    const to = lowerBound(position, ((k - reach + 1) * step) / view.scale + view.top, from)
+    counts[k] = to - from
+    from = to
+  }
+  const rowOf = (axis: number) => Math.floor(((axis - view.top) * view.scale) / step)
+  const first = position.length > 0 ? rowOf(position[0]) : 0
+  const last = position.length > 0 ? rowOf(position[position.length - 1]) : -1
   for (let row = 0; row < rows.length; row++) {
-    const y = (row + 0.5) * step
-    const from = lowerBound(position, (y - reach) / view.scale + view.top)
-    const to = lowerBound(position, (y + reach) / view.scale + view.top, from)
-    rows[row] = full > 0 ? Math.min(1, (to - from) / (2 * reach) / full) : 0
+    let sum = 0
+    let weights = 0
+    for (let d = -reach + 1; d < reach; d++) {
+      if (row + d < first || row + d > last) continue
+      sum += counts[row + reach + d] * (reach - Math.abs(d))
+      weights += reach - Math.abs(d)
+    }
+    // Nothing is said about rows above the first mark and below the last.
+    if (row >= first && row <= last && weights > 0 && full > 0) rows[row] = Math.min(1, sum / (weights * step) / full)
   }
   return rows
 }

@@ -1,7 +1,7 @@
 import type { Frame, Painter, Surface } from '../surface.ts'
 import type { Theme } from '../theme.ts'
 import { toScreen } from '../viewport.ts'
-import { densityRows, eachRow, isDense } from './columns.ts'
+import { densityRows, eachRow, fullDensity, isDense } from './columns.ts'
 import type { CompareData } from './data.ts'
 
 /** Room at the right for the marks of disagreement, CSS pixels. */
@@ -57,7 +57,7 @@ function paintMarks(
 
 function paintDense(surface: Surface, lane: Frame, data: CompareData, position: Float64Array, theme: Theme): void {
   const step = 1 / surface.pixelRatio
-  const full = (2.5 * position.length) / (data.viewport.length * data.viewport.scale)
+  const full = fullDensity(data.viewport, position)
   const bars: number[] = []
   densityRows(data.viewport, position, full, step).forEach((density, row) => {
     const line = lane.y + (row + 0.5) * step

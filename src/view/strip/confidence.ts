@@ -1,9 +1,9 @@
+import { lowerBound } from '../sorted.ts'
 import type { Frame, Painter, Surface } from '../surface.ts'
 import type { Theme } from '../theme.ts'
 import { toScreen } from '../viewport.ts'
 import { eachRow, inView, isDense } from './columns.ts'
 import type { AgeErrorData, ConfidenceData } from './data.ts'
-import { lowerBound } from '../sorted.ts'
 
 /** The probability of every boundary: 0 at the left edge, 1 at the right. */
 export const paintConfidence: Painter<ConfidenceData> = (surface, frame, data, theme) => {
@@ -46,57 +46,62 @@ function paintPins(surface: Surface, frame: Frame, data: ConfidenceData, theme: 
   }
 }
 
-/** From afar: least to greatest probability in each row as a grey band, their mean as a line. */
+/** Half height of the stretch over which the mean is taken from afar, CSS pixels. */
+const meanReach = 8
+
+/** From afar: in each row what the least likely boundary lacks to certainty, as a line from the right; over it the mean of a few rows. */
 function paintSpread(surface: Surface, frame: Frame, data: ConfidenceData, theme: Theme): void {
   const { viewport, position, probability } = data
   const step = 1 / surface.pixelRatio
-  const band: number[] = []
+  const axisAt = (y: number) => viewport.top + y / viewport.scale
+  const lacking: number[] = []
   const mean: number[] = []
-  let from = inView(viewport, position)[0]
+  let [from, to, row] = [0, 0, lowerBound(position, axisAt(0))]
   for (let y = 0; y < viewport.height; y += step) {
-    const to = lowerBound(position, viewport.top + (y + step) / viewport.scale, from)
-    let [least, greatest, sum] = [1, 0, 0]
-    for (let i = from; i < to; i++) {
-      least = Math.min(least, probability[i])
-      greatest = Math.max(greatest, probability[i])
-      sum += probability[i]
-    }
-    if (to > from) {
-      const line = frame.y + y + step / 2
-      band.push(frame.x + least * frame.width, line, frame.x + greatest * frame.width, line)
-      mean.push(frame.x + (sum / (to - from)) * frame.width, line)
-    }
-    from = to
+    const line = frame.y + y + step / 2
+    let least = 1
+    for (; row < position.length && position[row] < axisAt(y + step); row++) least = Math.min(least, probability[row])
+    if (least < 1) lacking.push(frame.x + least * frame.width, line, frame.x + frame.width, line)
+    from = lowerBound(position, axisAt(y - meanReach), from)
+    to = lowerBound(position, axisAt(y + meanReach), to)
+    let sum = 0
+    for (let i = from; i < to; i++) sum += probability[i]
+    mean.push(to > from ? frame.x + (sum / (to - from)) * frame.width : NaN, line)
   }
-  surface.lines(band, { colour: theme.bandNarrow, width: step })
+  surface.lines(lacking, { colour: theme.bandNarrow, width: step })
   surface.polyline(mean, { colour: theme.ink, width: theme.stroke.hair })
+}
+
+/** Years at the edge of the error column: the greatest error, at least one year. */
+export function ageErrorLimit(data: Pick<AgeErrorData, 'younger' | 'older' | 'limit'>): number {
+  return data.limit ?? Math.max(1, greatest(data.younger), greatest(data.older))
 }
 
 /** The error of the chronology as a band that widens downcore about its own middle, younger to the left. */
 export const paintAgeError: Painter<AgeErrorData> = (surface, frame, data, theme) => {
   const { viewport, position, younger, older } = data
-  const limit = data.limit ?? Math.max(1, greatest(younger), greatest(older))
   const middle = frame.x + frame.width / 2
-  const perYear = (frame.width / 2 - 1) / limit
+  const perYear = (frame.width / 2 - 1) / ageErrorLimit(data)
   const left: number[] = []
   const right: number[] = []
-  eachRow(
-    viewport,
-    position,
-    surface.pixelRatio,
-    (i, y) => {
-      left.push(middle - younger[i] * perYear, frame.y + y)
-      right.push(middle + older[i] * perYear, frame.y + y)
-    },
-    // Marks far beyond the window take part, so that the band does not end between two of them.
-    200,
-  )
+  const add = (i: number) => {
+    const y = frame.y + toScreen(viewport, position[i])
+    left.push(middle - younger[i] * perYear, y)
+    right.push(middle + older[i] * perYear, y)
+  }
+  // The marks just beyond the window take part, so that the band does not end between two of them.
+  const [first, end] = inView(viewport, position)
+  if (first > 0) add(first - 1)
+  eachRow(viewport, position, surface.pixelRatio, add, 0)
+  if (end < position.length) add(end)
   const outline = [...left]
   for (let i = right.length - 2; i >= 0; i -= 2) outline.push(right[i], right[i + 1])
   surface.clip(frame, () => {
     if (outline.length >= 6) surface.polygon(outline, { fill: theme.bandWide })
     for (const edge of [left, right]) surface.polyline(edge, { colour: theme.faint, width: theme.stroke.hair })
-    surface.line(middle, frame.y, middle, frame.y + frame.height, { colour: theme.ink, width: theme.stroke.hair })
+    const top = frame.y + Math.max(0, toScreen(viewport, 0))
+    const bottom = frame.y + Math.min(frame.height, toScreen(viewport, viewport.length))
+    surface.line(middle, top, middle, bottom, { colour: theme.ink, width: theme.stroke.hair })
   })
 }
 

@@ -65,7 +65,8 @@ export function depthText(data: Pick<DepthAxisData, 'viewport' | 'mmPerPx' | 'de
 /** The depth axis, its rule along the right edge of the frame. */
 export const paintDepthAxis: Painter<DepthAxisData> = (surface, frame, data, theme) => {
   const ticks = depthTicks(data)
-  const right = frame.x + frame.width
+  // The rule itself lies inside the frame, on its last whole pixel.
+  const right = frame.x + frame.width - theme.stroke.hair / 2
   const { viewport } = data
   const top = frame.y + Math.max(0, toScreen(viewport, 0))
   const bottom = frame.y + Math.min(frame.height, toScreen(viewport, viewport.length))

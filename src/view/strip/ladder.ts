@@ -2,7 +2,7 @@ import { formatNumber } from '../numbers.ts'
 import type { Frame, Painter, Surface } from '../surface.ts'
 import type { Theme } from '../theme.ts'
 import { toScreen } from '../viewport.ts'
-import { densityRows, eachRow, inView, isDense, markAt } from './columns.ts'
+import { densityRows, eachRow, fullDensity, inView, isDense, markAt } from './columns.ts'
 import type { LadderData, MarkColumn, ProposalColumn } from './data.ts'
 import { paintSpans } from './spans.ts'
 import { yearNumbers } from './yearNumbers.ts'
@@ -12,7 +12,7 @@ const certain = 0
 const doubtful = 1
 const rejected = 2
 
-/** Width of the lane in which marks stand, CSS pixels; year numbers follow to its right. */
+/** Width of the lane in which marks stand, CSS pixels; year numbers follow to its right. 120 is a good width for both. */
 export const laneWidth = 46
 
 /**
@@ -30,7 +30,7 @@ export const paintLadder: Painter<LadderData> = (surface, frame, data, theme) =>
     surface.group('spans', () =>
       paintSpans(surface, lane, data.viewport, data.spans, theme, {
         selected: data.selectedSpan,
-        named: true,
+        names: { x: lane.x + lane.width + 10, room: frame.width - lane.width - 10 },
         ground: true,
       }),
     )
@@ -114,12 +114,11 @@ function paintRungs(surface: Surface, lane: Frame, data: LadderData, boundaries:
   }
 }
 
-/** Far out: how close the boundaries stand, certain and doubtful ones apart by tone; a line as long as the lane is 2.5 times the core's mean. */
+/** Far out: how close the boundaries stand, and where the doubtful ones are. */
 function paintDensity(surface: Surface, lane: Frame, data: LadderData, boundaries: MarkColumn, theme: Theme): void {
   const { viewport } = data
   const step = 1 / surface.pixelRatio
-  const full = (2.5 * boundaries.position.length) / (viewport.length * viewport.scale)
-  const all = densityRows(viewport, boundaries.position, full, step)
+  const all = densityRows(viewport, boundaries.position, fullDensity(viewport, boundaries.position), step)
   const bars: number[] = []
   const left = lane.x + 2
   for (let row = 0; row < all.length; row++) {

@@ -34,8 +34,10 @@ function paintLine(surface: Surface, frame: Frame, data: ProfileData, line: Prof
   const x = (value: number) => frame.x + 1 + Math.min(frame.width, Math.max(-1, (value - low) * perUnit))
   const rows = rowsPerSample(data) * surface.pixelRatio
   const points = rows > 1 ? samples(frame, data, line, x) : extremes(surface, frame, data, line, x)
+  // From afar the line becomes a solid band: set back in tone, it leaves the sediment the darkest thing on the page.
+  const solid = rows < 0.25
   surface.polyline(points, {
-    colour: line.tone === 'ink' ? theme.ink : theme.faint,
+    colour: line.tone === 'quiet' ? theme.bandNarrow : solid ? theme.faint : theme.ink,
     width: theme.stroke.hair,
   })
 }

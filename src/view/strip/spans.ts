@@ -12,14 +12,17 @@ export const spanName: Record<StripSpan['kind'], string> = {
   hiatus: 'hiatus',
 }
 
-/** Spans as textured blocks across the frame. `selected` is outlined in the accent. */
+/**
+ * Spans as textured blocks across the frame. `selected` is drawn in the accent; `names` is
+ * where the kinds stand in words.
+ */
 export function paintSpans(
   surface: Surface,
   frame: Frame,
   view: Viewport,
   spans: readonly StripSpan[],
   theme: Theme,
-  options: { selected?: number | null; named?: boolean; ground?: boolean; colour?: string } = {},
+  options: { selected?: number | null; names?: { x: number; room: number }; ground?: boolean; colour?: string } = {},
 ): void {
   spans.forEach((span, index) => {
     const top = Math.max(-1, toScreen(view, span.from))
@@ -33,22 +36,23 @@ export function paintSpans(
     const edge = { colour: tone, width: isSelected ? theme.stroke.strong : theme.stroke.hair }
     surface.line(block.x, block.y, block.x + block.width, block.y, edge)
     surface.line(block.x, block.y + block.height, block.x + block.width, block.y + block.height, edge)
-    if (options.named) paintName(surface, frame, block, spanName[span.kind], tone, theme)
+    if (options.names) paintName(surface, frame, block, options.names, spanName[span.kind], tone, theme)
   })
 }
 
-/** The kind in words, where the block is high and wide enough to hold it. */
-function paintName(surface: Surface, frame: Frame, block: Frame, name: string, tone: string, theme: Theme): void {
-  const size = theme.size.tiny
+/** The kind in words beside the block, where it is high enough that no year number can stand in the way. */
+function paintName(
+  surface: Surface,
+  frame: Frame,
+  block: Frame,
+  place: { x: number; room: number },
+  name: string,
+  tone: string,
+  theme: Theme,
+): void {
+  const size = theme.size.small
   const top = Math.max(frame.y, block.y)
   const height = Math.min(frame.y + frame.height, block.y + block.height) - top
-  const width = surface.measure(name, size)
-  if (height < size * 1.7 || width + 6 > block.width) return
-  const x = block.x + block.width / 2
-  const y = top + height / 2
-  surface.rect(
-    { x: x - width / 2 - 3, y: y - size * 0.7, width: width + 6, height: size * 1.4 },
-    { fill: theme.ground },
-  )
-  surface.text(name, x, y, { size, colour: tone, anchor: 'middle', baseline: 'middle' })
+  if (height < size * 2.8 || surface.measure(name, size) > place.room) return
+  surface.text(name, place.x, top + height / 2, { size, colour: tone, baseline: 'middle' })
 }
