@@ -4,8 +4,12 @@ import type { FileHandle } from 'node:fs/promises'
 import { basename } from 'node:path'
 import { Fault } from '../../worker/check.ts'
 import { describeScan } from '../../worker/reading/describe.ts'
+import type { Description } from '../../worker/reading/describe.ts'
 import { LevelledScan } from '../../worker/reading/levelledScan.ts'
 import type { ByteSource, Scan } from '../../worker/reading/scanFile.ts'
+import type { TiffLayout } from '../../worker/reading/tiff.ts'
+import { TiffPixels } from '../../worker/reading/tiffPixels.ts'
+import { sharpDecoders } from './sharpDecoders.ts'
 import { SharpPixels } from './sharpPixels.ts'
 
 /**
@@ -15,12 +19,37 @@ import { SharpPixels } from './sharpPixels.ts'
 export async function openSharpScan(path: string): Promise<Scan> {
   const handle = await openFile(path)
   try {
-    const { size } = await handle.stat()
-    const description = await describeScan(fileSource(handle, size), basename(path))
-    const sha256 = await hashFile(handle)
-    return new LevelledScan(new SharpPixels(path, description), { ...description.info, sha256 })
-  } finally {
+    const source = fileSource(handle, (await handle.stat()).size)
+    const description = await describeScan(source, basename(path))
+    const info = { ...description.info, sha256: await hashFile(handle) }
+    if (misreadBySharp(description)) return new LevelledScan(new OwnPixels(handle, source, description.layout), info)
     await handle.close()
+    return new LevelledScan(new SharpPixels(path, description), info)
+  } catch (error) {
+    await handle.close()
+    throw error
+  }
+}
+
+/** libvips refuses or garbles separate planes and divides premultiplied colours by their alpha; our own reader does neither. */
+function misreadBySharp(description: Description): description is Description & { format: 'tiff' } {
+  if (description.format !== 'tiff') return false
+  const { planes, premultiplied } = description.layout.levels[0].image
+  return planes > 1 || premultiplied
+}
+
+/** A TIFF read by the page's reader; the file stays open until the scan is closed. */
+class OwnPixels extends TiffPixels {
+  private readonly handle: FileHandle
+
+  constructor(handle: FileHandle, source: ByteSource, layout: TiffLayout) {
+    super(source, layout, sharpDecoders)
+    this.handle = handle
+  }
+
+  override close(): void {
+    super.close()
+    void this.handle.close()
   }
 }
 

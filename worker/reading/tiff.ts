@@ -37,7 +37,6 @@ export async function readTiffLayout(source: ByteSource): Promise<TiffLayout> {
   const main = chain.find(({ reduced }) => !reduced) ?? chain[0]
   const image = await readTiffImage(frame, main.directory)
   notes.push(...image.notes)
-  if (image.samples === 2 || image.samples === 4) notes.push(...(await alphaNotes(frame, main.directory)))
   const pictures = chain.filter(({ reduced }) => !reduced).length
   const others: Found[] = [
     ...chain.filter((found) => found !== main),
@@ -127,13 +126,4 @@ async function readReduced(
 /** Writers round the sides of reduced copies up or down, some at each halving. */
 function fits(side: number, mainSide: number, shrink: number): boolean {
   return side >= 1 && Math.abs(side * shrink - mainSide) < 2 * shrink && side >= Math.floor(mainSide / shrink)
-}
-
-async function alphaNotes(frame: TiffFrame, directory: TiffDirectory): Promise<string[]> {
-  const kind = await readNumber(frame, directory, 338, 0)
-  return [
-    kind === 1
-      ? 'the file has an alpha channel that its colours were multiplied with; the colours are used as they stand'
-      : 'the file has an alpha channel; it is not used in profiles',
-  ]
 }

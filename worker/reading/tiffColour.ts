@@ -14,6 +14,8 @@ export interface TiffColour {
   inverted: boolean
   /** Colours of a palette image, `channels` bytes each; null for other images. */
   palette: Uint8Array | null
+  /** Colours that were multiplied with the alpha channel beside them (ExtraSamples 1); they are handed out as they stand. */
+  premultiplied: boolean
   /** JPEG blocks whose three components are red, green and blue as they stand, not YCbCr. */
   jpegRgb: boolean
   notes: string[]
@@ -46,7 +48,16 @@ export async function readColour(frame: TiffFrame, directory: TiffDirectory, com
   const photometric = await readNumber(frame, directory, 262, samples >= 3 ? 2 : 1)
   const what = `${samples} samples of ${storedBits} bits`
   if (compression === 'jpeg' && storedBits !== 8) throw notRead('JPEG compression', what)
-  const base = { samples, storedBits, inverted: false, palette: null, jpegRgb: false, notes: [] as string[] }
+  const extra = samples === 2 || samples === 4 ? await readNumber(frame, directory, 338, 0) : null
+  const base = {
+    samples,
+    storedBits,
+    inverted: false,
+    palette: null,
+    premultiplied: extra === 1,
+    jpegRgb: false,
+    notes: alphaNotes(extra),
+  }
   const bits = storedBits === 16 ? 16 : 8
   if (photometric === 0 || photometric === 1) {
     if (samples > 2 || (samples === 2 && (storedBits < 8 || compression === 'jpeg'))) throw notRead('grey', what)
@@ -145,6 +156,13 @@ async function readPalette(
     (_, i) => colours[(i % channels) * count + Math.floor(i / channels)],
   )
   return { channels, palette }
+}
+
+function alphaNotes(extra: number | null): string[] {
+  if (extra === null) return []
+  return extra === 1
+    ? ['the file has an alpha channel that its colours were multiplied with; the colours are used as they stand']
+    : ['the file has an alpha channel; it is not used in profiles']
 }
 
 function notRead(kind: string, what: string): Fault {
