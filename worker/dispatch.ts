@@ -4,6 +4,7 @@ import { runCount } from './core/ladder.ts'
 import { extractProfile } from './core/profile.ts'
 import { defaultRecipe } from './core/recipe.ts'
 import { uprightView } from './core/scan.ts'
+import { chronologyTable, layerRows, layersTable, profileTable } from './core/tables.ts'
 import type { Scan } from './reading/scanFile.ts'
 import { protocolVersion } from './protocol.ts'
 import type { Failure, FromWorker, JobKind, Reply, Request, ToWorker } from './protocol.ts'
@@ -60,6 +61,16 @@ const handlers: { [K in JobKind]: Handler<K> } = {
     const upright = uprightView(await open.readRegion(region, level), orientation)
     const [height, width] = upright.shape as [number, number]
     return { width, height, rgba: paintSamples(upright, display, open.info.bits) }
+  },
+  table(request) {
+    switch (request.table) {
+      case 'layers':
+        return layersTable(layerRows(request.boundaries, request.spans), request.mmPerPx, request.depthTop)
+      case 'profile':
+        return profileTable(request.profile, request.detrended, request.mmPerPx, request.depthTop)
+      case 'chronology':
+        return chronologyTable(request.chronology)
+    }
   },
   profile({ scan, transect, recipe }, circumstances) {
     const open = circumstances.shelf.get(scan)

@@ -5,6 +5,7 @@ import type { Ladder, Span } from './core/ladder.ts'
 import type { Profile, ProfileRecipe } from './core/profile.ts'
 import type { Recipe } from './core/recipe.ts'
 import type { Orientation } from './core/scan.ts'
+import type { ChronologyColumns, YearBoundary } from './core/tables.ts'
 import type { Transect } from './core/transect.ts'
 import type { FaultCode } from './check.ts'
 import type { ScanInfo } from './reading/scanFile.ts'
@@ -13,6 +14,12 @@ import type { Progress } from './work.ts'
 
 /** Raised whenever a request or a reply changes its form; page and worker must agree. */
 export const protocolVersion = 1
+
+/** What a table is made of. */
+export type TableRequest =
+  | { table: 'layers'; boundaries: YearBoundary[]; spans: Span[]; mmPerPx: number | null; depthTop: number }
+  | { table: 'profile'; profile: Profile; detrended: Detrended; mmPerPx: number | null; depthTop: number }
+  | { table: 'chronology'; chronology: ChronologyColumns }
 
 /** One type map: every job's request and reply. Scans are named by their SHA-256 once opened. */
 export interface Jobs {
@@ -28,6 +35,8 @@ export interface Jobs {
     reply: { width: number; height: number; rgba: Uint8ClampedArray<ArrayBuffer> }
   }
   profile: { request: { scan: string; transect: Transect; recipe: ProfileRecipe }; reply: Profile }
+  /** A table as CSV text; see core/tables.ts for its columns. */
+  table: { request: TableRequest; reply: string }
   ladder: {
     request: { profile: Profile; spans: Span[]; fixed: Float64Array; recipe: Recipe }
     reply: { detrended: Detrended; candidates: Candidates; ladder: Ladder }

@@ -2,9 +2,12 @@ import type { WorkbenchState } from '../document/state.ts'
 import type { Transaction } from '../document/transaction.ts'
 import { wordsOf } from './scanDesk.svelte.ts'
 
+/** Transactions that go to the store together at the most. */
+const mostAtOnce = 100
+
 /** Where transactions are kept; see journalStore.ts. A promise resolves once the browser has them on disk. */
 export interface TransactionKeeper {
-  append(state: WorkbenchState, transaction: Transaction): Promise<void>
+  append(state: WorkbenchState, ...transactions: readonly Transaction[]): Promise<void>
 }
 
 /**
@@ -41,6 +44,11 @@ export class Autosave {
     if (!this.#running) void this.#work()
   }
 
+  /** Resolves when nothing is outstanding, or when storing has failed and would only fail again. */
+  async drained(): Promise<void> {
+    while (this.#running && !this.#failure) await new Promise((resolve) => setTimeout(resolve, 10))
+  }
+
   /** Tries again what could not be stored. */
   retry(): void {
     if (!this.#running && this.#queue.length > 0) void this.#work()
@@ -51,10 +59,11 @@ export class Autosave {
     try {
       while (this.#keeper && this.#queue.length > 0) {
         const keeper = this.#keeper
-        const { state, transaction } = this.#queue[0]
-        await keeper.append(state, transaction)
+        // What was done while the disk was busy goes down together, with the newest state.
+        const batch = this.#queue.slice(0, mostAtOnce)
+        await keeper.append(batch[batch.length - 1].state, ...batch.map(({ transaction }) => transaction))
         if (keeper !== this.#keeper) continue
-        this.#queue.shift()
+        this.#queue.splice(0, batch.length)
         this.#pending = this.#queue.length
         this.#failure = ''
         this.#at = Date.now()

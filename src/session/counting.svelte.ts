@@ -102,7 +102,8 @@ export class Counting {
 
   /** Confirms what lies under the cursor, or everything selected, as certain boundaries, and goes on. */
   confirm(): void {
-    if (this.#judge('certain')) this.#advance()
+    if (this.cursor === null) this.#advance()
+    else if (this.#judge('certain')) this.#advance()
   }
 
   doubt(): void {

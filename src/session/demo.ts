@@ -1,7 +1,6 @@
 import { loadDemo } from '../commands/loadDemo.ts'
 import { startCount } from '../commands/startCount.ts'
 import type { DemoFacts } from '../document/demoFacts.ts'
-import { newState } from '../document/state.ts'
 import type { Session } from './session.svelte.ts'
 
 /** The demo lies beside the page; it is invented from end to end. */
@@ -14,13 +13,11 @@ export async function openDemo(session: Session): Promise<void> {
   const scan = await session.desk.bringIn(file, demo.section.file, (words) => session.notices.word(words))
   const recipe = await session.client.run('defaultRecipe', null)
   const { workbench } = session
-  workbench.lay(newState(crypto.randomUUID()))
+  await session.projects.begin()
   workbench.author = 'Winterclay'
   workbench.dispatch(loadDemo(workbench.state, { facts: demo, scan: scan.info, recipe }))
   const [transect] = workbench.project.transects
   workbench.dispatch(startCount(workbench.state, { transect: transect.id, counterName: 'You', blind: true }))
-  workbench.author = 'You'
-  session.step = 'count'
 }
 
 async function fetched(name: string): Promise<Response> {

@@ -4,7 +4,7 @@
  * Exports: `JournalStore` —
  * `JournalStore.open(options?)`, `list()`, `claimProject(id)` (true: this tab may write), `releaseProject(id)`,
  * `create(state)` (a new or opened project with all its journal), `load(id)` (state and what was dropped),
- * `append(state, transaction)` (resolves once the record is on disk), `remove(id)`, `askToPersist()`, `close()` —
+ * `append(state, ...transactions)` (resolves once the records are on disk), `remove(id)`, `askToPersist()`, `close()` —
  * and `snapshotEvery`.
  *
  * Stores of the database, all lines sealed by a checksum (journal.ts):
@@ -190,22 +190,22 @@ export class JournalStore {
   }
 
   /**
-   * Appends the transaction that led to `state`. Resolves only once the storage transaction has completed with strict
-   * durability: from then on the edit outlives the page, the browser and the power. Rejects with a Fault otherwise.
+   * Appends the transactions that led to `state`, all or none. Resolves only once the storage transaction has completed
+   * with strict durability: from then on the edits outlive the page, the browser and the power. Rejects with a Fault
+   * otherwise. Several at once cost one wait for the disk, so that a fast counter does not run ahead of it.
    */
-  async append(state: WorkbenchState, transaction: Transaction): Promise<void> {
+  async append(state: WorkbenchState, ...transactions: readonly Transaction[]): Promise<void> {
     const { id } = state.project
     this.#mustBeClaimed(id)
     try {
       const tx = this.#db.transaction(tables, 'readwrite', { durability: 'strict' })
-      const writes: Promise<unknown>[] = [
-        // `add`, not `put`: a record once written is never replaced.
-        tx.objectStore('records').add(recordOf(id, transaction)),
-        tx.objectStore('projects').put(entryOf(state)),
-      ]
-      if (transaction.seq % snapshotEvery === 0) {
+      // `add`, not `put`: a record once written is never replaced.
+      const records = tx.objectStore('records')
+      const writes: Promise<unknown>[] = transactions.map((transaction) => records.add(recordOf(id, transaction)))
+      writes.push(tx.objectStore('projects').put(entryOf(state)))
+      if (transactions.some(({ seq }) => seq % snapshotEvery === 0)) {
         const snapshots = tx.objectStore('snapshots')
-        const old = transaction.seq - snapshotsKept * snapshotEvery
+        const old = state.version - snapshotsKept * snapshotEvery
         writes.push(snapshots.delete(IDBKeyRange.bound([id, 0], [id, Math.max(0, old)])))
         writes.push(snapshots.put({ project: id, version: state.version, line: encodeSnapshot(state) }))
       }

@@ -5,6 +5,7 @@ import { Counting } from './counting.svelte.ts'
 import { Detection } from './detection.svelte.ts'
 import { Notices } from './notices.svelte.ts'
 import { openDemo } from './demo.ts'
+import { Projects } from './projects.svelte.ts'
 import { ScanDesk, wordsOf } from './scanDesk.svelte.ts'
 import type { ScanKeeper } from './scanDesk.svelte.ts'
 import { Workbench } from './workbench.svelte.ts'
@@ -27,6 +28,7 @@ export class Session {
   readonly autosave = new Autosave()
   readonly client: WorkerClient
   readonly workbench: Workbench
+  readonly projects: Projects
   readonly desk: ScanDesk
   readonly detection: Detection
   readonly counting: Counting
@@ -38,6 +40,7 @@ export class Session {
     this.client = client
     this.workbench = new Workbench(this.notices, this.autosave)
     this.desk = new ScanDesk(client, keeper)
+    this.projects = new Projects(this.workbench, this.autosave, this.desk, this.notices)
     this.detection = new Detection(client)
     this.counting = new Counting(this.workbench, this.detection, () => ({
       count: this.count,
@@ -91,10 +94,12 @@ export class Session {
 
   /** Lays the first project on the bench: the last one worked on, or the demo. */
   async start(): Promise<void> {
+    await this.projects.connect()
     try {
-      await openDemo(this)
+      if (!(await this.projects.resume())) await openDemo(this)
+      this.arrive()
     } catch (error) {
-      this.notices.trouble(`The demo could not be opened: ${wordsOf(error)}. You can still open your own scans.`)
+      this.notices.trouble(`Nothing could be laid on the bench: ${wordsOf(error)}. You can still open your own scans.`)
     }
   }
 
@@ -108,6 +113,19 @@ export class Session {
   chooseCount(count: string): void {
     this.#countId = count
     this.counting.escape()
+    this.counting.cursor = null
+    this.#takeAuthor()
+  }
+
+  /** Begins anew on whatever was laid on the bench: its first section, its last count. */
+  arrive(): void {
+    this.choose(this.workbench.project.sections.at(0)?.id ?? '')
+    this.#takeAuthor()
+    this.step = this.count ? 'count' : 'scan'
+  }
+
+  /** Whoever's count is at hand is at the bench. */
+  #takeAuthor(): void {
     const counter = this.workbench.project.counters.find(({ id }) => id === this.count?.counter)
     if (counter) this.workbench.author = counter.name
   }
