@@ -17,7 +17,7 @@ export function prepareCanvas(
   // Setting the size clears the canvas and drops its memory; it is done only when the size changes.
   if (canvas.width !== pixelWidth) canvas.width = pixelWidth
   if (canvas.height !== pixelHeight) canvas.height = pixelHeight
-  const context = canvas.getContext('2d')
+  const context: Context | null = canvas.getContext('2d')
   if (!context) return null
   context.setTransform(1, 0, 0, 1, 0, 0)
   context.clearRect(0, 0, pixelWidth, pixelHeight)
@@ -240,7 +240,7 @@ class CanvasSurface implements Surface {
     if (known !== undefined) return known
     const side = Math.round(textureSide * this.pixelRatio)
     const canvas = new OffscreenCanvas(side, side)
-    const context = canvas.getContext('2d')
+    const context: Context | null = canvas.getContext('2d')
     if (context) drawTexture(context, side, texture, colour, this.pixelRatio)
     const pattern = context && this.#context.createPattern(canvas, 'repeat')
     this.#textures.set(key, pattern)

@@ -24,8 +24,7 @@ export const closest = 12
 /** The whole core, from end to end. */
 export function fit(length: number, height: number): Viewport {
   const core = Math.max(1, length)
-  const scale = fitScale(core, height)
-  return { length: core, height: Math.max(1, height), top: -(Math.max(1, height) - core * scale) / 2 / scale, scale }
+  return clamp({ length: core, height: Math.max(1, height), top: 0, scale: fitScale(core, height) })
 }
 
 /** Smallest and largest scale of a view: from the whole core to single pixels. */
@@ -41,7 +40,7 @@ export function clamp(view: Viewport): Viewport {
   const first = -air / scale
   const last = view.length - (view.height - air) / scale
   // At the smallest scale the core is as long as the view allows: it is centred and cannot be scrolled.
-  const top = last <= first ? (first + last) / 2 : Math.min(last, Math.max(first, view.top))
+  const top = last - first <= 1e-6 / scale ? (first + last) / 2 : Math.min(last, Math.max(first, view.top))
   return scale === view.scale && top === view.top ? view : { ...view, scale, top }
 }
 
