@@ -1,4 +1,5 @@
 import type { DecodedShape, Decoders } from './decoders.ts'
+import { readStraightAlpha } from './straightAlpha.ts'
 
 /** Most pixels read back from a canvas at once. */
 const bandPixels = 4 << 20
@@ -14,7 +15,7 @@ export const browserDecoders: Decoders = {
       if (bitmap.width !== shape.width || bitmap.height !== shape.height) {
         throw new Error(`decoded to ${bitmap.width} x ${bitmap.height}`)
       }
-      return readBack(bitmap, shape)
+      return shape.channels === 4 ? await readStraightAlpha(bitmap) : readBack(bitmap, shape)
     } finally {
       bitmap.close()
     }
@@ -35,11 +36,9 @@ function readBack(bitmap: ImageBitmap, { width, height, channels }: DecodedShape
   return samples
 }
 
-/** Keeps the wanted channels of RGBA pixels; grey is decoded to three equal channels. */
+/** Keeps the colours of RGBA pixels, or the first of three equal ones for grey. */
 function pick(rgba: Uint8ClampedArray, samples: Uint8Array, channels: number): void {
-  if (channels === 4) {
-    samples.set(rgba)
-  } else if (channels === 3) {
+  if (channels === 3) {
     for (let from = 0, to = 0; from < rgba.length; from += 4) {
       samples[to++] = rgba[from]
       samples[to++] = rgba[from + 1]
