@@ -1,6 +1,6 @@
 import type { Work } from '../work.ts'
 import type { Candidates } from './candidates.ts'
-import { featuresOf, learnEvidence } from './ladderEvidence.ts'
+import { featuresOf, firstReference, learnEvidence, logOddsOf, priorEvidence, referenceOf } from './ladderEvidence.ts'
 import type { Evidence } from './ladderEvidence.ts'
 import type { Ground } from './ladderGround.ts'
 import { laySites } from './ladderSites.ts'
@@ -16,11 +16,9 @@ import type { ThicknessLaw } from './thicknessLaw.ts'
 export interface LadderModel {
   law: ThicknessLaw
   field: ThicknessField
-  evidence: Evidence | null
+  evidence: Evidence
   /** Share of years that left no candidate. */
   missed: number
-  /** Candidates that are no boundary, per layer. */
-  falseRate: number
   rounds: number
 }
 
@@ -31,7 +29,7 @@ export interface CountedPart extends SitePart {
 
 const rounds = 12
 /** Priors, each worth so many layers: spread of log thickness, missed years, unmarked beds, false candidates per layer. */
-const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003, falseRate: 0.5 }
+const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003 }
 
 /**
  * Expectation-maximisation (Dempster, Laird & Rubin 1977): the ladder's probabilities under the present parameters,
@@ -45,15 +43,15 @@ export function* fitLadder(
 ): Work<{ model: LadderModel; parts: CountedPart[] }> {
   const field = new ThicknessField(ground, thickness)
   const layers = field.coordinate(ground.rows)
-  const features = featuresOf(candidates, layers)
+  let reference = firstReference(candidates, layers)
+  let features = featuresOf(candidates, reference)
   let law = thicknessLaw(prior.sigma, prior.bedShare)
-  let { missed, falseRate } = prior
-  let evidence: Evidence | null = null
-  let logRatio = features.prior
+  let missed = prior.missed
+  let evidence = priorEvidence()
   let parts: CountedPart[] = []
   for (let round = 0; round < rounds; round++) {
     yield { stage: 'ladder', done: round, total: rounds }
-    const logWeight = logRatio.map((value) => value + Math.log((1 - missed) / falseRate))
+    const logWeight = logOddsOf(features, evidence)
     parts = laySites(candidates, logWeight, ground, field, fixed, missed).map((part) => ({
       ...part,
       messages: forwardBackward(part.stretch, law),
@@ -63,12 +61,13 @@ export function* fitLadder(
     const found = layerStatistics(parts, law, field)
     law = thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers))
     followThickness(field, found.count, found.logSum)
-    const { years, hidden, spurious } = tally(parts, belief)
+    const { years, hidden } = tally(parts)
     missed = Math.min(0.2, (hidden + prior.missed * 4 * prior.layers) / (years + 4 * prior.layers))
-    falseRate = (spurious + prior.falseRate * prior.layers) / (field.coordinate(ground.rows) + prior.layers)
-    ;({ evidence, logRatio } = learnEvidence(features, belief))
+    reference = referenceOf(candidates, belief, reference)
+    features = featuresOf(candidates, reference)
+    evidence = learnEvidence(features, belief, evidence)
   }
-  return { model: { law, field, evidence, missed, falseRate, rounds }, parts }
+  return { model: { law, field, evidence, missed, rounds }, parts }
 }
 
 /** Posterior of each candidate; 0 for those no site stands for. */
@@ -80,8 +79,8 @@ export function beliefs(count: number, parts: CountedPart[]): Float64Array {
   return belief
 }
 
-/** Expected numbers of all years, of years without a candidate in readable ground, and of candidates that are no years. */
-function tally(parts: CountedPart[], belief: Float64Array) {
+/** Expected numbers of all years in readable ground, and of those without a candidate. */
+function tally(parts: CountedPart[]) {
   let years = 0
   let hidden = 0
   for (const { kind, messages } of parts) {
@@ -91,7 +90,5 @@ function tally(parts: CountedPart[], belief: Float64Array) {
       if (kind[i] === 'missed') hidden += messages.probability[i]
     }
   }
-  let spurious = 0
-  for (const one of belief) spurious += 1 - one
-  return { years, hidden, spurious }
+  return { years, hidden }
 }

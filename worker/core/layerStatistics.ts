@@ -5,7 +5,7 @@ import type { ThicknessLaw } from './thicknessLaw.ts'
 
 /** Expected layers of a posterior: how many stand in each cell of the field, how thick they are against the local median. */
 export class LayerStatistics {
-  /** Expected number of regular layers centred in each cell, and the sum of their log thickness; [cells]. */
+  /** Expected number of regular layers centred in each cell, and the sum of their log thickness in path pixels; [cells]. */
   readonly count: Float64Array
   readonly logSum: Float64Array
   /** Expected numbers of layers: all, and those thick by an unmarked bed. */
@@ -78,7 +78,7 @@ function addPart(
         found.regular += regular
         found.squares += regular * log * log
         found.count[c] += regular
-        found.logSum[c] += regular * log
+        found.logSum[c] += regular * (log + field.logMedian[c])
       }
       if (forced[j] === 1) break
     }

@@ -86,7 +86,7 @@ const memory = 8
  * Moves the local median to where the layers say it is: a smoother of the mean log thickness found in each cell, whose
  * memory is counted in layers so that a tenfold change of thickness is followed alike in its thick and its thin part.
  * Two-sided exponential weights are the best linear smoother of a level that walks randomly (Muth 1960).
- * `count` and `logSum` [cells]: expected number of layers centred in each cell, and the sum of log thickness over local median.
+ * `count` and `logSum` [cells]: expected number of layers centred in each cell, and the sum of their log thickness in path pixels.
  */
 export function followThickness(field: ThicknessField, count: Float64Array, logSum: Float64Array): void {
   const cells = count.length
@@ -111,7 +111,7 @@ export function followThickness(field: ThicknessField, count: Float64Array, logS
   }
   // Where nothing was seen for many layers the old median stays: half a layer's worth of 'no change'.
   for (let c = 0; c < cells; c++) {
-    field.logMedian[c] += Math.max(-0.5, Math.min(0.5, smoothSum[c] / (smoothCount[c] + 0.5)))
+    field.logMedian[c] = (smoothSum[c] + 0.5 * field.logMedian[c]) / (smoothCount[c] + 0.5)
   }
   field.integrate()
 }
