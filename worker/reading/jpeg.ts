@@ -1,5 +1,6 @@
 import { Fault } from '../check.ts'
 import { cutShort } from './bytes.ts'
+import { checkDimensions } from './limits.ts'
 import { jfifResolution, orientationNotes, readExif } from './resolution.ts'
 import type { ByteSource, StatedResolution } from './scanFile.ts'
 import { latin1 } from './sniff.ts'
@@ -68,6 +69,7 @@ export async function readJpegLayout(source: ByteSource): Promise<JpegLayout> {
   }
   if (!frame || scans === 0) throw damaged('JPEG', at, 'ends before any image data')
   const { width, height, components, leastBits } = frame
+  checkDimensions(width, height, true)
   checkLength(leastBits, essential, width, height)
   return {
     width,

@@ -60,11 +60,13 @@ const bestRatios: Record<TiffCompression, number> = {
   jpeg: Infinity,
 }
 
-/** Uncompressed strips are read in parts of about this many bytes. */
-const partBytes = 1 << 20
-/** Packed strips that unpack to more than this are streamed, in bands of about `bandBytes`. */
-const mostStripBytes = 16 << 20
-const bandBytes = 4 << 20
+/** Bytes, unpacked: strips above `whole` are streamed in bands if they are packed; uncompressed ones are read in parts. */
+interface StripSizes {
+  whole: number
+  band: number
+  part: number
+}
+const stripSizes: StripSizes = { whole: 16 << 20, band: 4 << 20, part: 1 << 20 }
 
 /** Reads and checks one image directory. Every block of a checked image lies inside the file. */
 export async function readTiffImage(frame: TiffFrame, directory: TiffDirectory): Promise<TiffImage> {
@@ -99,7 +101,7 @@ export async function readTiffImage(frame: TiffFrame, directory: TiffDirectory):
     jpegTables: compression === 'jpeg' ? await readBytes(frame, directory, 347) : null,
   }
   checkBlocks(image, frame.source.size)
-  return image.tiled || compression === 'jpeg' ? image : inParts(image)
+  return inParts(image)
 }
 
 async function readCompression(frame: TiffFrame, directory: TiffDirectory): Promise<TiffCompression> {
@@ -232,14 +234,15 @@ function checkBlocks(image: TiffImage, size: number): void {
 }
 
 /**
- * Tall strips seen as blocks of a few rows. Uncompressed, each block is a range of the file of its own; packed strips above
- * `mostStripBytes` are unpacked as a stream that passes their blocks one after the other.
+ * Tall strips seen as blocks of a few rows. Uncompressed, each block is a range of the file of its own; large packed
+ * strips are unpacked as a stream that passes their blocks one after the other.
  */
-function inParts(image: TiffImage): TiffImage {
+export function inParts(image: TiffImage, sizes = stripSizes): TiffImage {
   const rowBytes = storedRowBytes(image)
   const packed = image.compression !== 'none'
-  if (packed && rowBytes * image.blockHeight <= mostStripBytes) return image
-  const rows = rowsOfPart(image, Math.max(1, Math.floor((packed ? bandBytes : partBytes) / rowBytes)))
+  const small = packed && rowBytes * image.blockHeight <= sizes.whole
+  if (small || image.tiled || image.compression === 'jpeg') return image
+  const rows = rowsOfPart(image, Math.max(1, Math.floor((packed ? sizes.band : sizes.part) / rowBytes)))
   const partsOfStrip = Math.ceil(image.blockHeight / rows)
   if (partsOfStrip === 1) return image
   const down = Math.ceil(image.height / rows)
