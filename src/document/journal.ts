@@ -5,6 +5,7 @@
  * `encodeSnapshot(project, version)`, `decodeSnapshot(text)`, `checksum(text)`. Replay and recovery: recover.ts.
  */
 import { Fault } from '../../worker/check.ts'
+import { crc32 } from './crc32.ts'
 import { recordOf, whole } from './form.ts'
 import { migrateTransaction } from './migrations.ts'
 import { attempt, need } from './outcome.ts'
@@ -65,17 +66,9 @@ export class Journal {
   }
 }
 
-const crcTable = Uint32Array.from({ length: 256 }, (_, byte) => {
-  let value = byte
-  for (let bit = 0; bit < 8; bit++) value = value & 1 ? (value >>> 1) ^ 0xedb88320 : value >>> 1
-  return value
-})
-
-/** CRC-32 (ISO 3309, polynomial 0xEDB88320) of the UTF-8 bytes, 8 hexadecimal digits: finds torn and altered records. */
+/** CRC-32 of the UTF-8 bytes, 8 hexadecimal digits: finds torn and altered records. */
 export function checksum(content: string): string {
-  let crc = 0xffffffff
-  for (const byte of new TextEncoder().encode(content)) crc = (crc >>> 8) ^ crcTable[(crc ^ byte) & 0xff]
-  return ((crc ^ 0xffffffff) >>> 0).toString(16).padStart(8, '0')
+  return crc32(new TextEncoder().encode(content)).toString(16).padStart(8, '0')
 }
 
 /** One line of JSON, `{"checksum":"…","<name>":…}`, whose checksum is that of the inner text. */

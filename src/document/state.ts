@@ -2,12 +2,12 @@
  * The document at one moment: a project, its version, and every transaction that led there. A pure value; the session
  * holds the current one and replaces it on dispatch.
  *
- * Exports: `WorkbenchState`, `newState(id)`, `stateAt(snapshot)`, `applyTransaction(state, transaction)`,
+ * Exports: `WorkbenchState`, `newState(id)`, `stateWithPast(project, since, transactions)`,
+ * `applyTransaction(state, transaction)`,
  * `applyEdit(state, edit, stamp)` (both in one: the new state and the transaction to store), `replay(state, transactions)`.
  */
 import { Fault } from '../../worker/check.ts'
 import { Journal } from './journal.ts'
-import type { Snapshot } from './journal.ts'
 import type { Outcome } from './outcome.ts'
 import { emptyProject } from './project.ts'
 import type { Project } from './project.ts'
@@ -27,9 +27,21 @@ export function newState(id: string): WorkbenchState {
   return { project: emptyProject(id), version: 0, journal: Journal.startingAt(0) }
 }
 
-/** A state that begins with a snapshot, its past unknown. */
-export function stateAt({ project, version }: Snapshot): WorkbenchState {
-  return { project, version, journal: Journal.startingAt(version) }
+/** A state of which the project is known and the last transactions, those after `since`, are too. */
+export function stateWithPast(
+  project: Project,
+  since: number,
+  transactions: readonly Transaction[],
+): Outcome<WorkbenchState> {
+  let journal = Journal.startingAt(since)
+  for (const transaction of transactions) {
+    if (transaction.seq !== journal.version + 1) {
+      const message = `transaction ${transaction.seq} comes where ${journal.version + 1} is due`
+      return new Fault('format', 'seq', transaction.seq, message)
+    }
+    journal = journal.append(transaction)
+  }
+  return { project, version: journal.version, journal }
 }
 
 /** The state after a transaction; a Fault, and the state as it was, when it starts from another version or does not fit. */
