@@ -21,23 +21,25 @@ export function isDense(view: Viewport, position: ArrayLike<number>): boolean {
 }
 
 /**
- * Calls `each` for the marks in view, at most one in each device row: of many marks in one row the first stands for all.
+ * Calls `each` for the marks in view, at most one in each device row: of many marks in one row the first stands for all,
+ * up to and without `end`.
  * Found by binary search, so that the cost follows the height of the window and not the length of the core.
  */
 export function eachRow(
   view: Viewport,
   position: ArrayLike<number>,
   pixelRatio: number,
-  each: (index: number, y: number) => void,
+  each: (index: number, y: number, end: number) => void,
   margin = 2,
 ): void {
   const [from, to] = inView(view, position, margin)
   let i = from
   while (i < to) {
     const y = (position[i] - view.top) * view.scale
-    each(i, y)
     const nextRow = (Math.floor(y * pixelRatio) + 1) / pixelRatio
-    i = Math.max(i + 1, lowerBound(position, nextRow / view.scale + view.top, i + 1, to))
+    const end = Math.max(i + 1, lowerBound(position, nextRow / view.scale + view.top, i + 1, to))
+    each(i, y, end)
+    i = end
   }
 }
 

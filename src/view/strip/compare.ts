@@ -105,7 +105,7 @@ function paintSites(
   paintGutter(surface, frame, missed, doubted, dense, theme)
 }
 
-/** Close up all rows; from afar, one site in each row, but never an agreement instead of a disagreement. */
+/** Close up all sites; from afar one in each device row, and never an agreement instead of a disagreement. */
 function eachSite(
   surface: Surface,
   data: CompareData,
@@ -113,19 +113,24 @@ function eachSite(
   dense: boolean,
   each: (site: number, y: number) => void,
 ): void {
+  const { viewport, counters } = data
   if (!dense) {
-    eachRow(data.viewport, sites.position, surface.pixelRatio, each)
+    eachRow(viewport, sites.position, surface.pixelRatio, each)
     return
   }
-  const counters = data.counters.length
-  eachRow(data.viewport, sites.position, surface.pixelRatio, (first, y) => {
-    const end = (Math.floor(y * surface.pixelRatio) + 1) / surface.pixelRatio
+  const spread = (site: number) => {
+    let [least, most] = [2, 0]
+    for (let k = site * counters.length; k < (site + 1) * counters.length; k++) {
+      if (sites.label[k] < least) least = sites.label[k]
+      if (sites.label[k] > most) most = sites.label[k]
+    }
+    return most - least
+  }
+  eachRow(viewport, sites.position, surface.pixelRatio, (first, y, end) => {
     let worst = first
-    let apart = -1
-    for (let i = first; i < sites.position.length && toScreen(data.viewport, sites.position[i]) < end; i++) {
-      const labels = sites.label.subarray(i * counters, (i + 1) * counters)
-      const spread = Math.max(...labels) - Math.min(...labels)
-      if (spread > apart) [worst, apart] = [i, spread]
+    for (let site = first, apart = 0; site < end && apart < 2; site++) {
+      const here = spread(site)
+      if (here > apart) [worst, apart] = [site, here]
     }
     each(worst, y)
   })

@@ -33,13 +33,35 @@ function paintLine(surface: Surface, frame: Frame, data: ProfileData, line: Prof
   const perUnit = high > low ? (frame.width - 2) / (high - low) : 0
   const x = (value: number) => frame.x + 1 + Math.min(frame.width, Math.max(-1, (value - low) * perUnit))
   const rows = rowsPerSample(data) * surface.pixelRatio
-  const points = rows > 1 ? samples(frame, data, line, x) : extremes(surface, frame, data, line, x)
-  // From afar the line becomes a solid band: set back in tone, it leaves the sediment the darkest thing on the page.
-  const solid = rows < 0.25
-  surface.polyline(points, {
-    colour: line.tone === 'quiet' ? theme.bandNarrow : solid ? theme.faint : theme.ink,
-    width: theme.stroke.hair,
-  })
+  const colour = line.tone === 'quiet' ? theme.bandNarrow : theme.ink
+  if (rows > 1) surface.polyline(samples(frame, data, line, x), { colour, width: theme.stroke.hair })
+  else if (rows > solidBelow)
+    surface.polyline(extremes(surface, frame, data, line, x), { colour, width: theme.stroke.hair })
+  else {
+    // Set back in tone, the solid band leaves the sediment the darkest thing on the page.
+    const tone = line.tone === 'quiet' ? theme.bandNarrow : theme.faint
+    surface.lines(bars(extremes(surface, frame, data, line, x)), { colour: tone, width: 1 / surface.pixelRatio })
+  }
+}
+
+/** Below this many device rows for each sample the line is a solid band: one level bar in each row, drawn far more cheaply. */
+const solidBelow = 0.25
+
+/** One bar for each row of `extremes`, long enough to touch the bar above it; a gap in the profile is a gap. */
+function bars(points: readonly number[]): number[] {
+  const ends: number[] = []
+  let [last, end] = [NaN, NaN]
+  for (let i = 0; i + 3 < points.length; i += 4) {
+    let [from, to] = points[i] < points[i + 2] ? [points[i], points[i + 2]] : [points[i + 2], points[i]]
+    const row = points[i + 1]
+    if (!Number.isNaN(from)) {
+      if (end < from) from = end
+      if (last > to) to = last
+      ends.push(from, row, Math.max(to, from + 0.5), row)
+    }
+    ;[last, end] = [from, to]
+  }
+  return ends
 }
 
 /** CSS pixels from one sample to the next. */

@@ -4,6 +4,7 @@ import { axisToPath, columnToAxis, pathAxis, pathToAxis } from '../../../src/vie
 import { paintProfile } from '../../../src/view/strip/profile.ts'
 import { lightTheme } from '../../../src/view/theme.ts'
 import { fit, show, toScreen } from '../../../src/view/viewport.ts'
+import type { Viewport } from '../../../src/view/viewport.ts'
 import { seededRandom } from '../../../worker/random.ts'
 import { RecordingSurface } from './recordingSurface.ts'
 
@@ -71,24 +72,33 @@ describe('the profile column', () => {
     { axis: 0, across: 50 },
     { axis: length, across: 50 },
   ])
-  const draw = (viewport = fit(length, 600), pixelRatio = 1) => {
+  const surfaceOf = (viewport = fit(length, 600), pixelRatio = 1) => {
     const surface = new RecordingSurface(pixelRatio)
     const data = { viewport, path, lines: [line], spans: [], boundaries: null, cursor: null }
     paintProfile(surface, { x: 10, y: 0, width: 102, height: 600 }, data, lightTheme)
-    return surface.polylines[0].points
+    return surface
   }
+  const draw = (viewport: Viewport) => surfaceOf(viewport).polylines[0].points
 
-  it('keeps a layer thinner than a screen row', () => {
-    const points = draw()
-    const xs = points.filter((_, i) => i % 2 === 0)
-    expect(Math.min(...xs.filter((x) => !Number.isNaN(x)))).toBeCloseTo(11 + 3 * 0.5, 6)
-    const row = points[2 * xs.indexOf(11 + 3 * 0.5) + 1]
-    expect(Math.abs(row - toScreen(fit(length, 600), 23_456.5))).toBeLessThanOrEqual(1)
+  it('keeps a layer thinner than a screen row, as a bar that reaches to it', () => {
+    const surface = surfaceOf()
+    const ends = surface.segments.flatMap((one) => one.ends)
+    const reach = Math.min(...ends.filter((_, i) => i % 4 === 0))
+    expect(reach).toBeCloseTo(11 + 3 * 0.5, 6)
+    const rows = ends.filter((_, i) => i % 4 === 1 && ends[i - 1] === reach)
+    expect(rows.length).toBe(1)
+    expect(Math.abs(rows[0] - toScreen(fit(length, 600), 23_456.5))).toBeLessThanOrEqual(1)
   })
 
-  it('draws two vertices in each device row, however long the profile', () => {
-    expect(draw().length).toBe(600 * 4)
-    expect(draw(fit(length, 600), 2).length).toBe(1200 * 4)
+  it('draws one bar in each device row from afar, however long the profile, and none where it is unreadable', () => {
+    const bars = (ratio: number) => surfaceOf(fit(length, 600), ratio).segments.flatMap((one) => one.ends).length / 4
+    const share = (572 * 39) / 40
+    expect(Math.abs(bars(1) - share)).toBeLessThanOrEqual(2)
+    expect(Math.abs(bars(2) - 2 * share)).toBeLessThanOrEqual(2)
+  })
+
+  it('draws two vertices in each device row from a middle distance', () => {
+    expect(draw(show(fit(length, 600), 20_000, 21_500)).length).toBe(600 * 4)
   })
 
   it('lifts the pen where the profile is unreadable', () => {
