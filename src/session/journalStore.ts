@@ -66,6 +66,8 @@ export class JournalStore {
   readonly #name: string
   /** Projects this tab may write, with what gives each back. */
   readonly #claimed = new Map<string, () => void>()
+  /** Locks given back, or on their way: a lock asked for again must wait for that. */
+  readonly #released = new Map<string, Promise<unknown>>()
 
   private constructor(db: IDBPDatabase<Tables>, locks: Locks, name: string) {
     this.#db = db
@@ -111,6 +113,7 @@ export class JournalStore {
   /** Makes this tab the one that writes the project; false when another tab is. The claim ends with the tab. */
   async claimProject(id: string): Promise<boolean> {
     if (this.#claimed.has(id)) return true
+    await this.#released.get(id)
     return new Promise((resolve, reject) => {
       const hold = (lock: Lock | null) => {
         resolve(lock !== null)
@@ -118,7 +121,9 @@ export class JournalStore {
         // The lock is held until this promise resolves.
         return new Promise<void>((release) => this.#claimed.set(id, release))
       }
-      this.#locks.request(`${this.#name} project ${id}`, { ifAvailable: true }, hold).catch(reject)
+      const request = this.#locks.request(`${this.#name} project ${id}`, { ifAvailable: true }, hold)
+      request.catch(reject)
+      this.#released.set(id, request.catch(() => undefined))
     })
   }
 

@@ -141,6 +141,8 @@ describe('JournalStore', () => {
       'this project is open in another tab, which does the writing; close that tab, then reload this one',
     )
     store.releaseProject('project-1')
+    expect(await store.claimProject('project-1')).toBe(true)
+    store.releaseProject('project-1')
     await Promise.resolve()
     expect(await second.claimProject('project-1')).toBe(true)
   })
