@@ -1,5 +1,6 @@
 import { fileURLToPath } from 'node:url'
 import { svelte } from '@sveltejs/vite-plugin-svelte'
+import { VitePWA } from 'vite-plugin-pwa'
 import { defineConfig } from 'vitest/config'
 
 const at = (path: string) => fileURLToPath(new URL(path, import.meta.url))
@@ -12,7 +13,27 @@ export default defineConfig(({ isSsrBuild }) => ({
   root: at('./src'),
   publicDir: isSsrBuild ? false : at('./sample-images/scans'),
   base: './',
-  plugins: [svelte()],
+  plugins: [
+    svelte({ configFile: false }),
+    // The page works offline after its first visit: page, worker and the demo's photograph are kept.
+    isSsrBuild
+      ? []
+      : VitePWA({
+          registerType: 'autoUpdate',
+          injectRegister: 'script-defer',
+          manifest: {
+            name: 'Winterclay',
+            short_name: 'Winterclay',
+            description: 'Date lake sediment by counting its annual layers.',
+            display: 'standalone',
+            start_url: './',
+            background_color: '#fbfbfb',
+            theme_color: '#fbfbfb',
+            icons: [],
+          },
+          workbox: { globPatterns: ['**/*.{html,js,css,json,jpg}'], maximumFileSizeToCacheInBytes: 4e6 },
+        }),
+  ],
   // ndarray-fft was written for Node: it names `global` and reaches for Node's `buffer` through its pool of arrays.
   define: isSsrBuild ? {} : { global: 'globalThis' },
   resolve: { alias: isSsrBuild ? {} : { buffer: at('./worker/buffer.ts') } },
@@ -31,7 +52,6 @@ export default defineConfig(({ isSsrBuild }) => ({
     include: ['test/**/*.test.ts'],
     exclude: ['**/node_modules/**', 'dist/**'],
     environment: 'node',
-    alias: {},
     testTimeout: 30_000,
     hookTimeout: 60_000,
     maxWorkers: 2,

@@ -1,7 +1,9 @@
 import { Fault } from './check.ts'
+import { buildChronology } from './core/chronology.ts'
 import { paintSamples, stretchedDisplay } from './core/display.ts'
 import { runCount } from './core/ladder.ts'
 import { extractProfile } from './core/profile.ts'
+import { runningMean, thicknessSummary } from './core/rates.ts'
 import { defaultRecipe } from './core/recipe.ts'
 import { uprightView } from './core/scan.ts'
 import { chronologyTable, layerRows, layersTable, profileTable } from './core/tables.ts'
@@ -62,6 +64,11 @@ const handlers: { [K in JobKind]: Handler<K> } = {
     const [height, width] = upright.shape as [number, number]
     return { width, height, rgba: paintSamples(upright, display, open.info.bits) }
   },
+  chronology: (request) => buildChronology(request),
+  thickness: ({ thickness, window }) => ({
+    summary: thicknessSummary(thickness),
+    mean: runningMean(thickness, window),
+  }),
   table(request) {
     switch (request.table) {
       case 'layers':

@@ -1,8 +1,10 @@
 import type { Candidates } from './core/candidates.ts'
+import type { Chronology, ChronologyRequest } from './core/chronology.ts'
 import type { Detrended } from './core/detrend.ts'
 import type { Display } from './core/display.ts'
 import type { Ladder, Span } from './core/ladder.ts'
 import type { Profile, ProfileRecipe } from './core/profile.ts'
+import type { ThicknessSummary } from './core/rates.ts'
 import type { Recipe } from './core/recipe.ts'
 import type { Orientation } from './core/scan.ts'
 import type { ChronologyColumns, YearBoundary } from './core/tables.ts'
@@ -35,6 +37,13 @@ export interface Jobs {
     reply: { width: number; height: number; rgba: Uint8ClampedArray<ArrayBuffer> }
   }
   profile: { request: { scan: string; transect: Transect; recipe: ProfileRecipe }; reply: Profile }
+  /** Years and their error at every boundary of a count. */
+  chronology: { request: ChronologyRequest; reply: Chronology }
+  /** Figures and running mean of a thickness series. */
+  thickness: {
+    request: { thickness: Float64Array; window: number }
+    reply: { summary: ThicknessSummary | null; mean: Float64Array }
+  }
   /** A table as CSV text; see core/tables.ts for its columns. */
   table: { request: TableRequest; reply: string }
   ladder: {

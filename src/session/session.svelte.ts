@@ -1,6 +1,8 @@
+import type { ChronologyRequest } from '../../worker/core/chronology.ts'
 import type { Count, Section, SectionSpan, SectionTransect } from '../document/project.ts'
 import type { Cause } from '../document/transaction.ts'
 import { Autosave } from './autosave.svelte.ts'
+import { ChronologyDesk, countedBoundaries } from './chronologyDesk.svelte.ts'
 import { Counting } from './counting.svelte.ts'
 import { Detection } from './detection.svelte.ts'
 import { Notices } from './notices.svelte.ts'
@@ -32,6 +34,7 @@ export class Session {
   readonly desk: ScanDesk
   readonly detection: Detection
   readonly counting: Counting
+  readonly chronology: ChronologyDesk
   step = $state<StepId>('scan')
   #sectionId = $state('')
   #countId = $state('')
@@ -47,6 +50,7 @@ export class Session {
       spans: this.spans,
       cause: this.cause,
     }))
+    this.chronology = new ChronologyDesk(client, () => this.chronologyRequest)
     this.autosave.onFailure = (words) => this.notices.trouble(words)
   }
 
@@ -76,6 +80,29 @@ export class Session {
     const { points, width, tilt, masks } = this.transect
     const spans = this.spans.map(({ from, to, kind }) => ({ from, to, kind }))
     return { scan: this.scan.info.sha256, transect: { points, width, tilt, masks }, spans, recipe: this.section.recipe }
+  })
+  /** Counts with at least one boundary: a count just begun says nothing of the error yet. */
+  counted: readonly Count[] = $derived(this.counts.filter(({ layers }) => layers.position.length > 0))
+  /** Calendar year of the youngest counted varve; null where the count floats. */
+  anchorYear: number | null = $derived.by(() => {
+    const { coringYear, topIntact, topYearOpen } = this.workbench.project.core
+    if (coringYear === null || !topIntact || (this.section?.depthTop ?? 0) > 0) return null
+    return coringYear - (topYearOpen ? 1 : 0)
+  })
+  chronologyRequest: ChronologyRequest | null = $derived.by(() => {
+    const { count, section } = this
+    if (!count || !section || count.layers.position.length === 0) return null
+    const repeats = this.counted.filter(({ transect }) => transect === count.transect)
+    const convention = this.chronology.chosen ?? (repeats.length > 1 ? 'repeat-counts' : 'half-layer')
+    return {
+      count: countedBoundaries(count.layers),
+      repeats: repeats.map(({ layers }) => countedBoundaries(layers)),
+      spans: this.spans.map(({ from, to, kind }) => ({ from, to, kind })),
+      mmPerPx: section.scale?.mmPerPx ?? null,
+      depthTop: section.depthTop,
+      convention: repeats.length > 1 ? convention : 'half-layer',
+      anchorYear: this.anchorYear,
+    }
   })
   /** Other counts are out of sight while this one is made blind. */
   blind = $derived(this.step === 'count' && (this.count?.blind ?? false))

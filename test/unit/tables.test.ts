@@ -68,13 +68,13 @@ describe('the table of a chronology', () => {
     depthMm: [1, 2],
     thicknessMm: [1, NaN],
     varveYear: [1, 2],
-    errorPlus: [0, 0.5],
-    errorMinus: [0, 1],
+    sigma: [0, 0.5],
+    half95: [0, 1],
     calendarYear: null,
   }
   it('names calendar years only when it is anchored', () => {
     expect(chronologyTable(floating)).toBe(
-      'layer,depth_mm,thickness_mm,varve_year,error_plus,error_minus\n' +
+      'layer,depth_mm,thickness_mm,varve_year,sd_years,half_width_95_years\n' +
         '1,1.0000,1.0000,1.00,0.00,0.00\n2,2.0000,,2.00,0.50,1.00\n',
     )
     expect(chronologyTable({ ...floating, calendarYear: [2018, 2017] }).split('\n')[1]).toBe(

@@ -85,21 +85,21 @@ export interface ChronologyColumns {
   thicknessMm: ArrayLike<number>
   /** Varve years from the top of the count to the boundary. */
   varveYear: ArrayLike<number>
-  /** Counting error, older and younger, in years. */
-  errorPlus: ArrayLike<number>
-  errorMinus: ArrayLike<number>
+  /** Standard deviation of the varve year, and the half width of its 95 % interval, in years. */
+  sigma: ArrayLike<number>
+  half95: ArrayLike<number>
   /** Astronomical calendar year of the layer below the boundary; null for a floating chronology. */
   calendarYear: ArrayLike<number> | null
 }
 
-/** `layer,depth_mm,thickness_mm,varve_year,error_plus,error_minus` and, when anchored, `calendar_year` (astronomical). */
+/** `layer,depth_mm,thickness_mm,varve_year,sd_years,half_width_95_years` and, when anchored, `calendar_year` (astronomical). */
 export function chronologyTable(columns: ChronologyColumns): string {
-  const { depthMm, thicknessMm, varveYear, errorPlus, errorMinus, calendarYear } = columns
+  const { depthMm, thicknessMm, varveYear, sigma, half95, calendarYear } = columns
   const n = depthMm.length
   checkSameLength('thicknessMm', thicknessMm, n)
   checkSameLength('varveYear', varveYear, n)
-  checkSameLength('errorPlus', errorPlus, n)
-  checkSameLength('errorMinus', errorMinus, n)
+  checkSameLength('sigma', sigma, n)
+  checkSameLength('half95', half95, n)
   if (calendarYear) checkSameLength('calendarYear', calendarYear, n)
   function* rows(): Generator<string[]> {
     for (let i = 0; i < n; i++) {
@@ -108,12 +108,12 @@ export function chronologyTable(columns: ChronologyColumns): string {
         numberCell(depthMm[i], decimals.mm),
         numberCell(thicknessMm[i], decimals.mm),
         numberCell(varveYear[i], decimals.years),
-        numberCell(errorPlus[i], decimals.years),
-        numberCell(errorMinus[i], decimals.years),
+        numberCell(sigma[i], decimals.years),
+        numberCell(half95[i], decimals.years),
         ...(calendarYear ? [numberCell(calendarYear[i], decimals.years)] : []),
       ]
     }
   }
-  const header = ['layer', 'depth_mm', 'thickness_mm', 'varve_year', 'error_plus', 'error_minus']
+  const header = ['layer', 'depth_mm', 'thickness_mm', 'varve_year', 'sd_years', 'half_width_95_years']
   return csvText(calendarYear ? [...header, 'calendar_year'] : header, rows())
 }

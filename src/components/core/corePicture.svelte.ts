@@ -340,8 +340,10 @@ export class CorePicture {
     }
   }
 
-  /** The chronology's error on the axis; null while there is none. */
+  /** The chronology's error on the axis, half widths of its 95 % interval; null while there is none. */
   ageError(): { position: Float64Array; younger: Float64Array; older: Float64Array } | null {
-    return null
+    const { result } = this.#session.chronology
+    if (!result) return null
+    return { position: columnToAxis(this.path, result.position), younger: result.half95, older: result.half95 }
   }
 }

@@ -28,6 +28,6 @@ export async function profileCsv(session: Session): Promise<string> {
 }
 
 export async function chronologyCsv(session: Session): Promise<string> {
-  const chronology = await session.chronology()
+  const chronology = await session.chronology.now()
   return session.client.run('table', { table: 'chronology', chronology })
 }
