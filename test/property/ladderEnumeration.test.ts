@@ -1,9 +1,10 @@
 import { describe, expect, it } from 'vitest'
+import { bedTail } from '../../worker/core/layerPairs.ts'
+import type { YearLaw } from '../../worker/core/layerPairs.ts'
 import { mostProbableLadder } from '../../worker/core/mostProbableLadder.ts'
 import { forwardBackward } from '../../worker/core/semiMarkov.ts'
 import type { Stretch } from '../../worker/core/semiMarkov.ts'
 import { densityAt, emptyStretch, recurrenceAt, survivalAt, thicknessLaw } from '../../worker/core/thicknessLaw.ts'
-import type { ThicknessLaw } from '../../worker/core/thicknessLaw.ts'
 import { yearDistribution } from '../../worker/core/yearDistribution.ts'
 import { seededRandom } from '../../worker/random.ts'
 import type { Random } from '../../worker/random.ts'
@@ -21,20 +22,45 @@ function drawStretch(random: Random, sites: number): Stretch {
   const weight = u.map(() => Math.exp(3 * random.normal()))
   const forced = new Uint8Array(sites)
   if (random.uniform() < 0.5) forced[random.below(sites)] = 1
-  return { u, weight, forced, start: 0, end: at + random.uniform() }
+  const shows = u.map(() => (random.uniform() < 0.6 ? 1 : 0))
+  return { u, weight, forced, shows: Uint8Array.from(shows), start: 0, end: at + random.uniform() }
+}
+
+function drawLaw(random: Random): YearLaw {
+  const raw = Array.from({ length: 16 }, () => 0.2 + random.uniform())
+  const mean = raw.reduce((total, one) => total + one, 0) / raw.length
+  return {
+    thickness: thicknessLaw(0.1 + 0.5 * random.uniform(), 0.02 * random.uniform()),
+    inner: { rate: random.uniform(), phase: Float64Array.from(raw, (one) => one / mean) },
+  }
+}
+
+/** Weight of two sites as the boundaries of one year, straight from the definition. */
+function yearWeight({ u, shows }: Stretch, law: YearLaw, i: number, j: number): number {
+  const d = u[j] - u[i]
+  if (d > law.thickness.longest) return bedTail(law, d)
+  let weight = densityAt(law.thickness, d) * Math.exp(-law.inner.rate)
+  for (let k = i + 1; k < j; k++) {
+    if (shows[k] === 1 && weight > 0) weight *= law.inner.phase[Math.min(15, Math.floor((16 * (u[k] - u[i])) / d))] / d
+  }
+  return weight
 }
 
 /** Every subset of the sites with its weight. */
-function enumerate({ u, weight, forced, start, end }: Stretch, law: ThicknessLaw) {
+function enumerate(stretch: Stretch, law: YearLaw) {
+  const { u, weight, forced, start, end } = stretch
+  const { thickness } = law
   const n = u.length
   const ladders: { sites: number[]; weight: number }[] = []
   for (let set = 0; set < 2 ** n; set++) {
     const sites = [...u.keys()].filter((i) => (set >> i) & 1)
     if (forced.some((one, i) => one === 1 && !sites.includes(i))) continue
-    let product = sites.length === 0 ? emptyStretch(law, end - start) : recurrenceAt(law, u[sites[0]] - start)
+    let product =
+      sites.length === 0 ? emptyStretch(thickness, end - start) : recurrenceAt(thickness, u[sites[0]] - start)
     for (const [k, site] of sites.entries()) {
       product *= weight[site]
-      product *= k + 1 < sites.length ? densityAt(law, u[sites[k + 1]] - u[site]) : survivalAt(law, end - u[site])
+      product *=
+        k + 1 < sites.length ? yearWeight(stretch, law, site, sites[k + 1]) : survivalAt(thickness, end - u[site])
     }
     ladders.push({ sites, weight: product })
   }
@@ -48,7 +74,7 @@ describe('the semi-Markov ladder equals enumeration of every subset of its sites
     it(`seed ${seed}: marginals, total, best ladder, distribution of the count`, () => {
       const random = seededRandom(seed)
       const stretch = drawStretch(random, 1 + random.below(11))
-      const law = thicknessLaw(0.1 + 0.5 * random.uniform(), 0.02 * random.uniform())
+      const law = drawLaw(random)
       const ladders = enumerate(stretch, law)
       const total = sum(ladders.map((one) => one.weight))
       const messages = forwardBackward(stretch, law)
@@ -59,7 +85,7 @@ describe('the semi-Markov ladder equals enumeration of every subset of its sites
         expect(Math.abs(messages.probability[i] - share)).toBeLessThan(1e-9)
       }
       const best = ladders.reduce((a, b) => (b.weight > a.weight ? b : a))
-      const found = mostProbableLadder(stretch, law)
+      const found = mostProbableLadder(stretch, law, messages)
       const weightFound = ladders.find(({ sites }) => sites.join() === found.join())!.weight
       expect(weightFound / best.weight).toBeCloseTo(1, 9)
       const from = random.below(n + 1)

@@ -110,7 +110,7 @@ function ladderOf(fit: { model: LadderModel; parts: CountedPart[] }): Ladder {
     ladder.position.set(position, at)
     ladder.probability.set(messages.probability, at)
     ladder.candidate.set(candidate, at)
-    for (const site of mostProbableLadder(stretch, model.law)) ladder.chosen[at + site] = 1
+    for (const site of mostProbableLadder(stretch, model.law, messages)) ladder.chosen[at + site] = 1
     for (let i = 0; i < position.length; i++) {
       ladder.kind[at + i] = siteKinds.indexOf(kind[i])
       ladder.thickness[at + i] = model.field.medianAt(position[i])

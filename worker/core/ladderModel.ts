@@ -2,6 +2,8 @@ import type { Work } from '../work.ts'
 import type { Candidates } from './candidates.ts'
 import { featuresOf, firstReference, learnEvidence, logOddsOf, priorEvidence, referenceOf } from './ladderEvidence.ts'
 import type { Evidence } from './ladderEvidence.ts'
+import { evenInnerLaw } from './layerPairs.ts'
+import type { YearLaw } from './layerPairs.ts'
 import type { Ground } from './ladderGround.ts'
 import { laySites } from './ladderSites.ts'
 import type { SitePart } from './ladderSites.ts'
@@ -10,11 +12,10 @@ import { forwardBackward } from './semiMarkov.ts'
 import type { Messages } from './semiMarkov.ts'
 import { followThickness, ThicknessField } from './thicknessField.ts'
 import { thicknessLaw } from './thicknessLaw.ts'
-import type { ThicknessLaw } from './thicknessLaw.ts'
 
 /** What was learned on the core. */
 export interface LadderModel {
-  law: ThicknessLaw
+  law: YearLaw
   field: ThicknessField
   evidence: Evidence
   /** Share of years that left no candidate. */
@@ -29,7 +30,7 @@ export interface CountedPart extends SitePart {
 
 const rounds = 12
 /** Priors, each worth so many layers: spread of log thickness, missed years, unmarked beds, false candidates per layer. */
-const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003 }
+const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003, inner: 0.3 }
 
 /**
  * Expectation-maximisation (Dempster, Laird & Rubin 1977): the ladder's probabilities under the present parameters,
@@ -45,7 +46,7 @@ export function* fitLadder(
   const layers = field.coordinate(ground.rows)
   let reference = firstReference(candidates, layers)
   let features = featuresOf(candidates, reference)
-  let law = thicknessLaw(prior.sigma, prior.bedShare)
+  let law: YearLaw = { thickness: thicknessLaw(prior.sigma, prior.bedShare), inner: evenInnerLaw(prior.inner) }
   let missed = prior.missed
   let evidence = priorEvidence()
   let parts: CountedPart[] = []
@@ -59,7 +60,10 @@ export function* fitLadder(
     if (round === rounds - 1) break
     const belief = beliefs(candidates.position.length, parts)
     const found = layerStatistics(parts, law, field)
-    law = thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers))
+    law = {
+      thickness: thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers)),
+      inner: found.inner(prior.inner, prior.layers),
+    }
     followThickness(field, found.count, found.logSum)
     const { years, hidden } = tally(parts)
     missed = Math.min(0.2, (hidden + prior.missed * 4 * prior.layers) / (years + 4 * prior.layers))

@@ -131,6 +131,7 @@ function partOf(sites: Site[], start: number, end: number): SitePart {
       u: Float64Array.from(sites, ({ u }) => u),
       weight: Float64Array.from(sites, ({ weight }) => weight),
       forced: Uint8Array.from(sites, ({ kind }) => (kind === 'confirmed' ? 1 : 0)),
+      shows: Uint8Array.from(sites, ({ kind }) => (kind === 'candidate' ? 1 : 0)),
       start,
       end,
     },

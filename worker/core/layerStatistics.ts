@@ -1,3 +1,5 @@
+import { phaseSteps } from './layerPairs.ts'
+import type { InnerLaw, YearLaw } from './layerPairs.ts'
 import type { SitePart } from './ladderSites.ts'
 import type { Messages } from './semiMarkov.ts'
 import type { ThicknessField } from './thicknessField.ts'
@@ -12,6 +14,8 @@ export class LayerStatistics {
   all = 0
   beds = 0
   squares = 0
+  /** Expected laminae inside years, by their phase. */
+  readonly phase = new Float64Array(phaseSteps)
   regular = 0
 
   constructor(cells: number) {
@@ -25,23 +29,39 @@ export class LayerStatistics {
     return Math.max(0.07, Math.min(0.6, Math.sqrt(variance)))
   }
 
+  /** Inner laminae per layer and where they lie; the prior is `prior` of them a layer, evenly, worth `layers` layers. */
+  inner(prior: number, layers: number): InnerLaw {
+    const all = this.phase.reduce((sum, one) => sum + one, 0)
+    const even = evenWeight / phaseSteps
+    const smooth = this.phase.map(
+      (one, k) => 0.5 * one + 0.25 * ((this.phase[k - 1] ?? one) + (this.phase[k + 1] ?? one)),
+    )
+    const sum = smooth.reduce((total, one) => total + one, 0) + evenWeight
+    return {
+      rate: (all + prior * layers) / (this.all + layers),
+      phase: smooth.map((one) => ((one + even) * phaseSteps) / sum),
+    }
+  }
+
   bedShare(prior: number, layers: number): number {
     return Math.min(0.05, (this.beds + prior * layers) / (this.all + layers))
   }
 }
 
+/** Inner laminae that the even prior of their phase is worth. */
+const evenWeight = 24
 /** Variance of the law's mixture of two widths over that of its narrow part. */
 const wideInflation = 1 + 0.08 * (1.8 * 1.8 - 1)
 
 /** Pairs of sites as neighbouring boundaries, each by its posterior probability (the xi of Baum-Welch). */
 export function layerStatistics(
   parts: (SitePart & { messages: Messages })[],
-  law: ThicknessLaw,
+  law: YearLaw,
   field: ThicknessField,
 ): LayerStatistics {
   const found = new LayerStatistics(field.logMedian.length)
-  const logTable = law.density.map((_, k) => Math.log(Math.max(k, 0.5) / law.perUnit))
-  for (const part of parts) addPart(found, part, law, field, logTable)
+  const logTable = law.thickness.density.map((_, k) => Math.log(Math.max(k, 0.5) / law.thickness.perUnit))
+  for (const part of parts) addPart(found, part, law.thickness, field, logTable)
   return found
 }
 
@@ -52,23 +72,24 @@ function addPart(
   field: ThicknessField,
   logTable: Float64Array,
 ): void {
-  const { u, forced } = stretch
-  const { down, up, logTotal, probability } = messages
+  const { u, shows } = stretch
+  const { down, up, pairs, logTotal, probability } = messages
+  const inside = new Float64Array(u.length)
   for (let i = 0; i < u.length; i++) {
     if (!(probability[i] > 1e-6)) continue
     let followed = 0
     let scale = NaN
     let factor = 0
-    for (let j = i + 1; j < u.length && u[j] - u[i] <= law.longest; j++) {
-      const at = (u[j] - u[i]) * law.perUnit
-      const k = Math.floor(at)
-      const f = law.density[k] + (at - k) * (law.density[k + 1] - law.density[k])
-      if (f > 0 && up.value[j] > 0) {
-        if (up.scale[j] !== scale) {
-          scale = up.scale[j]
-          factor = down.value[i] * Math.exp(down.scale[i] + scale - logTotal)
-        }
-        const pair = factor * f * up.value[j]
+    let seen = 0
+    for (let at = pairs.offset[i], j = i + 1; at < pairs.offset[i + 1]; at++, j++) {
+      const d = u[j] - u[i]
+      if (up.scale[j] !== scale) {
+        scale = up.scale[j]
+        factor = down.value[i] * Math.exp(down.scale[i] + scale - logTotal)
+      }
+      const pair = factor * pairs.weight[at] * up.value[j]
+      if (pair > 1e-9) {
+        const k = Math.floor(d * law.perUnit)
         // Unreadable ground repeats the law and teaches nothing.
         const regular = kind[i] === 'unreadable' || kind[j] === 'unreadable' ? 0 : pair * law.regular[k]
         const log = logTable[k]
@@ -79,8 +100,10 @@ function addPart(
         found.squares += regular * log * log
         found.count[c] += regular
         found.logSum[c] += regular * (log + field.logMedian[c])
+        for (let s = 0; s < seen; s++)
+          found.phase[Math.min(phaseSteps - 1, Math.floor((inside[s] * phaseSteps) / d))] += pair
       }
-      if (forced[j] === 1) break
+      if (shows[j] === 1) inside[seen++] = d
     }
     found.all += probability[i]
     // What is followed by nothing within the table is followed by a bed, or is the last layer of the stretch.

@@ -1,14 +1,16 @@
-import { bedFrom, bedMean, emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
-import type { ThicknessLaw } from './thicknessLaw.ts'
+import { bedTail, layerPairs } from './layerPairs.ts'
+import type { LayerPairs, YearLaw } from './layerPairs.ts'
+import { bedMean, emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
 
 /**
  * A stretch of core without a hiatus: sites that may be boundaries, in thickness coordinates (one unit = the local median
  * thickness, so that a layer's thickness is the difference of two coordinates wherever it lies).
  *
  * A set of sites s1 < s2 < … < sm is a ladder with the weight
- *   r(u_s1 - start) * prod w_s * prod f(u_s(k+1) - u_s(k)) * S(end - u_sm),
- * f the thickness law, S its survival, r = S / mean the stationary law of the first, cut layer; the empty set weighs
- * the probability that no boundary falls into the whole stretch. A ladder must hold every forced site.
+ *   r(u_s1 - start) * prod w_s * prod g(s_k, s_(k+1)) * S(end - u_sm),
+ * g the weight of a pair as one year (layerPairs.ts; beyond the table of the thickness law, its tail), S the survival of the
+ * thickness law, r = S / mean the stationary law of the first, cut layer; the empty set weighs the probability that no
+ * boundary falls into the whole stretch. A ladder must hold every forced site.
  * This is a hidden semi-Markov model with explicit durations (Rabiner 1989, section IV D; Yu 2010, Artificial Intelligence 174).
  */
 export interface Stretch {
@@ -18,17 +20,20 @@ export interface Stretch {
   weight: Float64Array
   /** 1: the site is a boundary for certain, [sites]. */
   forced: Uint8Array
+  /** 1: something is seen at the site; where it is no boundary it is a lamina inside a year, [sites]. */
+  shows: Uint8Array
   start: number
   end: number
 }
 
-/** Sums over all ladders of the sites passed so far that end at each site: value * exp(scale), both [sites]. */
+/** Sums over all ladders of the sites to one side that reach a site: value * exp(scale), both [sites]. */
 export interface Sweep {
   value: Float64Array
   scale: Float64Array
 }
 
 export interface Messages {
+  pairs: LayerPairs
   /** Young to old, the site's own weight included. */
   down: Sweep
   /** Old to young, the site's own weight included. */
@@ -39,107 +44,138 @@ export interface Messages {
   probability: Float64Array
 }
 
-type EndLaw = (law: ThicknessLaw, distance: number) => number
-
-const tooLarge = 1e100
-const tooSmall = 1e-100
-
-/**
- * One pass of the forward recursion. The exponential tail of the law lets all sites further back than its table be
- * carried in one decaying sum; values are rescaled as they leave the range of doubles, so length does not matter.
- */
-function sweep({ u, weight, forced, start }: Stretch, law: ThicknessLaw, atStart: EndLaw): Sweep {
-  const n = u.length
-  const value = new Float64Array(n)
-  const scale = new Float64Array(n)
-  const { density, longest, perUnit } = law
-  let shift = 0
-  // Bed tail over the sites [floor, entered), seen from the previous site.
-  let tail = 0
-  let entered = 0
-  // No ladder may jump over a forced site: sites before `floor` are out of reach.
-  let floor = 0
-  let mass = 0
-  let before = start
-  for (let j = 0; j < n; j++) {
-    const here = u[j]
-    const decay = Math.exp((before - here) / bedMean)
-    tail *= decay
-    mass *= decay
-    before = here
-    while (entered < j && here - u[entered] > longest) {
-      tail += value[entered] * bedTail(law, here - u[entered])
-      entered++
-    }
-    let sum = tail
-    if (floor === 0) sum += Math.exp(Math.log(atStart(law, here - start)) - shift)
-    for (let i = j - 1; i >= entered; i--) {
-      const at = (here - u[i]) * perUnit
-      const k = Math.floor(at)
-      sum += value[i] * (density[k] + (at - k) * (density[k + 1] - density[k]))
-    }
-    value[j] = sum * weight[j]
-    scale[j] = shift
-    mass += value[j]
-    if (forced[j] === 1) {
-      tail = 0
-      entered = j
-      // Site 0 may itself be forced; the marker only has to differ from 'nothing forced yet'.
-      floor = j + 1
-      mass = value[j]
-    }
-    if (mass > tooLarge || (mass < tooSmall && mass > 0)) {
-      const factor = 1 / mass
-      shift += Math.log(mass)
-      for (let i = entered; i <= j; i++) {
-        value[i] *= factor
-        scale[i] = shift
-      }
-      tail *= factor
-      mass = 1
-    }
-  }
-  return { value, scale }
-}
-
-/** What the law's exponential tail gives a gap longer than its table. */
-export function bedTail(law: ThicknessLaw, distance: number): number {
-  return (law.bedShare * Math.exp(-(distance - bedFrom) / bedMean)) / bedMean
-}
-
-function reversed({ u, weight, forced, start, end }: Stretch): Stretch {
-  return {
-    u: u.map((_, i) => -u[u.length - 1 - i]),
-    weight: weight.toReversed(),
-    forced: forced.toReversed(),
-    start: -end,
-    end: -start,
-  }
-}
-
 /** Forward-backward: the posterior probability of every site. */
-export function forwardBackward(stretch: Stretch, law: ThicknessLaw): Messages {
-  const down = sweep(stretch, law, recurrenceAt)
-  const back = sweep(reversed(stretch), law, survivalAt)
-  const up = { value: back.value.reverse(), scale: back.scale.reverse() }
+export function forwardBackward(stretch: Stretch, law: YearLaw): Messages {
+  const pairs = layerPairs(stretch, law)
+  const down = sweepDown(stretch, law, pairs)
+  const up = sweepUp(stretch, law, pairs)
   const logTotal = totalOf(stretch, law, down)
   const probability = new Float64Array(stretch.u.length)
   for (let i = 0; i < probability.length; i++) {
     const both = (down.value[i] * up.value[i]) / stretch.weight[i]
     probability[i] = both > 0 ? Math.min(1, both * Math.exp(down.scale[i] + up.scale[i] - logTotal)) : 0
   }
-  return { down, up, logTotal, probability }
+  return { pairs, down, up, logTotal, probability }
 }
 
-function totalOf({ u, forced, start, end }: Stretch, law: ThicknessLaw, down: Sweep): number {
+function sweepDown({ u, weight, forced, start }: Stretch, law: YearLaw, { offset, weight: pair }: LayerPairs): Sweep {
+  const n = u.length
+  const run = new Running(n, law)
+  const { value } = run
+  let entered = 0
+  let open = true
+  for (let j = 0; j < n; j++) {
+    run.advance(j > 0 ? u[j] - u[j - 1] : 0)
+    for (; entered < j && u[j] - u[entered] > law.thickness.longest; entered++) run.enter(entered, u[j] - u[entered])
+    let sum = run.tail
+    if (open) sum += run.scaled(recurrenceAt(law.thickness, u[j] - start))
+    for (let i = entered; i < j; i++) sum += value[i] * pair[offset[i] + j - i - 1]
+    run.put(j, sum * weight[j])
+    if (forced[j] === 1) {
+      run.forget(j)
+      entered = j
+      open = false
+    }
+    run.rescale(entered, j)
+  }
+  return run
+}
+
+function sweepUp({ u, weight, forced, end }: Stretch, law: YearLaw, { offset, weight: pair }: LayerPairs): Sweep {
+  const n = u.length
+  const run = new Running(n, law)
+  const { value } = run
+  let entered = n - 1
+  let open = true
+  for (let i = n - 1; i >= 0; i--) {
+    run.advance(i < n - 1 ? u[i + 1] - u[i] : 0)
+    for (; entered > i && u[entered] - u[i] > law.thickness.longest; entered--) run.enter(entered, u[entered] - u[i])
+    let sum = run.tail
+    if (open) sum += run.scaled(survivalAt(law.thickness, end - u[i]))
+    for (let j = i + 1, at = offset[i]; j <= entered; j++, at++) sum += pair[at] * value[j]
+    run.put(i, sum * weight[i])
+    if (forced[i] === 1) {
+      run.forget(i)
+      entered = i
+      open = false
+    }
+    run.rescale(i, entered)
+  }
+  return run
+}
+
+const tooLarge = 1e100
+const tooSmall = 1e-100
+
+/**
+ * The state of a sweep. The exponential tail of the thickness law lets all sites further back than its table be carried in
+ * one decaying sum; values are rescaled as they leave the range of doubles, so that length does not matter.
+ */
+class Running implements Sweep {
+  readonly value: Float64Array
+  readonly scale: Float64Array
+  /** Sum of what the sites beyond the table give the present one. */
+  tail = 0
+  private mass = 0
+  private shift = 0
+
+  constructor(
+    sites: number,
+    private readonly law: YearLaw,
+  ) {
+    this.value = new Float64Array(sites)
+    this.scale = new Float64Array(sites)
+  }
+
+  advance(step: number): void {
+    const decay = Math.exp(-step / bedMean)
+    this.tail *= decay
+    this.mass *= decay
+  }
+
+  enter(site: number, distance: number): void {
+    this.tail += this.value[site] * bedTail(this.law, distance)
+  }
+
+  /** A weight of the ends, in the present scale; by logarithms, since either factor alone may leave the range of doubles. */
+  scaled(weight: number): number {
+    return Math.exp(Math.log(weight) - this.shift)
+  }
+
+  put(site: number, value: number): void {
+    this.value[site] = value
+    this.scale[site] = this.shift
+    this.mass += value
+  }
+
+  /** No ladder jumps over a forced site: what came before it is out of reach. */
+  forget(site: number): void {
+    this.tail = 0
+    this.mass = this.value[site]
+  }
+
+  /** Brings the sites still in reach back to the middle of the range of doubles. */
+  rescale(from: number, to: number): void {
+    if (!(this.mass > tooLarge || (this.mass < tooSmall && this.mass > 0))) return
+    const factor = 1 / this.mass
+    this.shift += Math.log(this.mass)
+    for (let i = from; i <= to; i++) {
+      this.value[i] *= factor
+      this.scale[i] = this.shift
+    }
+    this.tail *= factor
+    this.mass = 1
+  }
+}
+
+function totalOf({ u, forced, start, end }: Stretch, { thickness }: YearLaw, down: Sweep): number {
   const n = u.length
   const last = forced.lastIndexOf(1)
-  const empty = last < 0 ? emptyStretch(law, end - start) : 0
+  const empty = last < 0 ? emptyStretch(thickness, end - start) : 0
   const reference = n > 0 ? down.scale[n - 1] : 0
-  let sum = empty > 0 ? Math.exp(Math.log(empty) - reference) : 0
+  let sum = Math.exp(Math.log(empty) - reference)
   for (let i = n - 1; i >= Math.max(0, last); i--) {
-    // In logarithms, since either factor alone may leave the range of doubles across a long empty stretch.
-    sum += Math.exp(Math.log(down.value[i]) + down.scale[i] - reference + Math.log(survivalAt(law, end - u[i])))
+    sum += Math.exp(Math.log(down.value[i]) + down.scale[i] - reference + Math.log(survivalAt(thickness, end - u[i])))
   }
   return Math.log(sum) + reference
 }

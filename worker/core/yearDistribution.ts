@@ -1,7 +1,7 @@
-import { bedTail } from './semiMarkov.ts'
+import { bedTail } from './layerPairs.ts'
+import type { YearLaw } from './layerPairs.ts'
 import type { Messages, Stretch } from './semiMarkov.ts'
-import { bedMean, densityAt, inTable, survivalAt } from './thicknessLaw.ts'
-import type { ThicknessLaw } from './thicknessLaw.ts'
+import { bedMean, survivalAt } from './thicknessLaw.ts'
 
 /** Probability of each number of years: probability[k] belongs to `first + k` years. */
 export interface YearDistribution {
@@ -27,18 +27,19 @@ const zeroYears: Band = { first: 0, values: Float64Array.of(1) }
  * The exact distribution of the number of boundaries among the sites [from, to) of a stretch, given everything seen in the
  * whole stretch. Sites depend on each other through the thickness law, so the sum is no Poisson-binomial: the recursion
  * carries, for every site, the distribution of the count up to it given that it is a boundary,
- *   C_j = first_j e_0 + sum_i p(i | j) C_i, shifted by one,   p(i | j) = down_i f(u_j - u_i) w_j / down_j,
+ *   C_j = first_j e_0 + sum_i p(i | j) C_i, shifted by one,   p(i | j) = down_i g(i, j) w_j / down_j,
  * and adds up C_j over the last boundary of the range. Bands follow the mass.
  */
 export function yearDistribution(
   stretch: Stretch,
-  law: ThicknessLaw,
+  law: YearLaw,
   messages: Messages,
   from: number,
   to: number,
 ): YearDistribution {
   const { u, weight, forced } = stretch
   const { value, scale } = messages.down
+  const { offset, weight: pair } = messages.pairs
   const bands: Band[] = new Array<Band>(to - from).fill(nothing)
   const tail = new Tail(law)
   const result = new Mixture()
@@ -48,7 +49,7 @@ export function yearDistribution(
   let lastShares = 0
   for (let j = from; j < to; j++) {
     tail.moveTo(u[j])
-    for (; entered < j && u[j] - u[entered] > law.longest; entered++) {
+    for (; entered < j && u[j] - u[entered] > law.thickness.longest; entered++) {
       tail.add(bands[entered - from], Math.log(value[entered]) + scale[entered], u[entered])
       bands[entered - from] = nothing
     }
@@ -58,8 +59,7 @@ export function yearDistribution(
     let inside = 0
     for (let i = entered; i < j; i++) {
       if (bands[i - from] === nothing) continue
-      const f = inTable(law.density, u[j] - u[i])
-      const share = ((value[i] * f * weight[j]) / value[j]) * Math.exp(scale[i] - scale[j])
+      const share = ((value[i] * pair[offset[i] + j - i - 1] * weight[j]) / value[j]) * Math.exp(scale[i] - scale[j])
       if (!(share > least)) continue
       parts.add(bands[i - from], share)
       inside += share
@@ -89,15 +89,17 @@ export function yearDistribution(
 }
 
 /** Probability that a boundary at site j is followed by none before site `to`. */
-function lastShare(stretch: Stretch, law: ThicknessLaw, { up }: Messages, j: number, to: number): number {
+function lastShare(stretch: Stretch, law: YearLaw, { up, pairs }: Messages, j: number, to: number): number {
   const { u, weight, forced, end } = stretch
   const own = Math.log(up.value[j] / weight[j]) + up.scale[j]
   let share = 0
   for (let k = to; k < u.length && u[k] - u[j] < furthest; k++) {
-    share += densityAt(law, u[k] - u[j]) * up.value[k] * Math.exp(up.scale[k] - own)
+    const at = pairs.offset[j] + k - j - 1
+    const g = at < pairs.offset[j + 1] ? pairs.weight[at] : bedTail(law, u[k] - u[j])
+    share += g * up.value[k] * Math.exp(up.scale[k] - own)
     if (forced[k] === 1) return share
   }
-  return share + survivalAt(law, end - u[j]) * Math.exp(-own)
+  return share + survivalAt(law.thickness, end - u[j]) * Math.exp(-own)
 }
 
 /** The distributions of all sites further back than the law's table, in one decaying sum. */
@@ -107,7 +109,7 @@ class Tail {
   sum = 0
   private logFactor = 0
   private at = -Infinity
-  constructor(private readonly law: ThicknessLaw) {}
+  constructor(private readonly law: YearLaw) {}
 
   moveTo(u: number): void {
     if (this.band !== nothing) this.logFactor -= (u - this.at) / bedMean

@@ -1,0 +1,72 @@
+import type { Stretch } from './semiMarkov.ts'
+import { bedFrom, bedMean } from './thicknessLaw.ts'
+import type { ThicknessLaw } from './thicknessLaw.ts'
+
+/**
+ * What lies inside a year without being its boundary: `rate` laminae a year on average, at places that may be typical
+ * (an autumn bloom stands at the same share of the year), `phase` their density over equal steps of the year's thickness from
+ * its young to its old boundary, mean 1.
+ */
+export interface InnerLaw {
+  rate: number
+  phase: Float64Array
+}
+
+/** Steps in which the phase of inner laminae is held. */
+export const phaseSteps = 16
+
+/** The laws of a year: how thick it is, and what it shows inside. */
+export interface YearLaw {
+  thickness: ThicknessLaw
+  inner: InnerLaw
+}
+
+export function evenInnerLaw(rate: number): InnerLaw {
+  return { rate, phase: new Float64Array(phaseSteps).fill(1) }
+}
+
+/**
+ * Weights of pairs of sites as the two boundaries of one year,
+ *   g(i, j) = f(d) e^(-rate) prod over the sites k between that show something: phase((u_k - u_i) / d) / d,   d = u_j - u_i,
+ * for all j from i + 1 while d stays within the law's table and no forced site is jumped over. Pairs of site i are
+ * weight[offset[i]] (for j = i + 1) to weight[offset[i + 1] - 1].
+ */
+export interface LayerPairs {
+  offset: Int32Array
+  weight: Float64Array
+}
+
+export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner }: YearLaw): LayerPairs {
+  const n = u.length
+  const { density, longest, perUnit } = thickness
+  const offset = new Int32Array(n + 1)
+  for (let i = 0, last = 0; i < n; i++) {
+    last = Math.max(last, i)
+    while (last + 1 < n && u[last + 1] - u[i] <= longest && !(forced[last] === 1 && last > i)) last++
+    offset[i + 1] = offset[i] + last - i
+  }
+  const weight = new Float64Array(offset[n])
+  const between = Math.exp(-inner.rate)
+  const steps = inner.phase.length
+  const seen = new Float64Array(n)
+  for (let i = 0; i < n; i++) {
+    let inside = 0
+    for (let at = offset[i], j = i + 1; at < offset[i + 1]; at++, j++) {
+      const d = u[j] - u[i]
+      const cell = d * perUnit
+      const k = Math.floor(cell)
+      let g = between * (density[k] + (cell - k) * (density[k + 1] - density[k]))
+      if (g > 0) {
+        for (let s = 0; s < inside; s++) g *= inner.phase[Math.min(steps - 1, Math.floor((seen[s] * steps) / d))] / d
+      }
+      weight[at] = g
+      if (shows[j] === 1) seen[inside++] = d
+    }
+  }
+  return { offset, weight }
+}
+
+/** What the law gives a layer longer than its table: an unmarked bed, with inner laminae at an even rate over its length. */
+export function bedTail({ thickness, inner }: YearLaw, distance: number): number {
+  return (thickness.bedShare * Math.exp(-(distance - bedFrom) / bedMean - inner.rate)) / bedMean
+}
