@@ -25,12 +25,15 @@ function drawCounts(random: Random, counters: number, layers: number, jitter: nu
 }
 
 /** The cost the module states, of sites given as lists of marks. */
-function costOf(sites: number[][], reachAt: Map<number, number>): number {
+function costOf(sites: number[][], counters: number, reachAt: Map<number, number>): number {
   return sites.reduce((total, site) => {
     const mean = site.reduce((a, b) => a + b, 0) / site.length
-    const variance = site.reduce((sum, x) => sum + (x - mean) ** 2, 0) / site.length
+    const squares = site.reduce((sum, x) => sum + (x - mean) ** 2, 0)
+    const oddities = Math.min(site.length, counters - site.length)
     const reach = reachAt.get(Math.min(...site))!
-    return Math.max(...site) - Math.min(...site) > reach ? Infinity : total + 1 + (4 * variance) / (reach * reach)
+    return Math.max(...site) - Math.min(...site) > reach
+      ? Infinity
+      : total + 1 + 1.5 * oddities + (8 * squares) / (reach * reach)
   }, 0)
 }
 
@@ -46,7 +49,7 @@ function leastCost(counts: readonly CounterMarks[], reachAt: Map<number, number>
     for (let subset = 1; subset < 1 << counts.length; subset++) {
       const members = counts.map((_, k) => k).filter((k) => (subset >> k) & 1)
       if (members.some((k) => placed[k] === counts[k].position.length)) continue
-      const cost = costOf([members.map((k) => counts[k].position[placed[k]])], reachAt)
+      const cost = costOf([members.map((k) => counts[k].position[placed[k]])], counts.length, reachAt)
       if (cost < best) best = Math.min(best, cost + from(placed.map((n, k) => n + ((subset >> k) & 1))))
     }
     known.set(key, best)
@@ -73,7 +76,7 @@ describe('alignment', () => {
       const pooled = counts.flatMap(({ position }) => [...position]).sort((a, b) => a - b)
       const thickness = localThickness(counts, Float64Array.from(pooled), options.thicknessWindow)
       const reachAt = new Map(pooled.map((x, i) => [x, options.tolerance * thickness[i]]))
-      const found = costOf(sitesOf(alignCounts(counts, options), counts), reachAt)
+      const found = costOf(sitesOf(alignCounts(counts, options), counts), counters, reachAt)
       expect(Math.abs(found - leastCost(counts, reachAt)), `seed ${seed}`).toBeLessThan(1e-9)
     }
   })
