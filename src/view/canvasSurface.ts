@@ -30,11 +30,13 @@ export function canvasSurface(context: Context, devicePixelRatio: number, font: 
   return new CanvasSurface(context, devicePixelRatio, font)
 }
 
+/** Patterns already made; a surface lives for one frame, a pattern serves all canvases. A few themes and screens make a few dozen. */
+const textures = new Map<string, CanvasPattern | null>()
+
 class CanvasSurface implements Surface {
   readonly #context: Context
   readonly pixelRatio: number
   readonly #font: string
-  readonly #textures = new Map<string, CanvasPattern | null>()
 
   constructor(context: Context, ratio: number, font: string) {
     this.#context = context
@@ -132,6 +134,7 @@ class CanvasSurface implements Surface {
     const line = rotation === 0 ? this.#snap(y) : 0
     if (anchor !== 'start') pen -= this.measure(label, style.size, weight) * (anchor === 'middle' ? 0.5 : 1)
     for (const run of runsOf(label, style.size, style.colour)) {
+      pen += run.gap
       this.#setFont(run.size, weight)
       if (style.halo) {
         context.strokeStyle = style.halo
@@ -151,7 +154,7 @@ class CanvasSurface implements Surface {
     let width = 0
     for (const run of runsOf(label, size, '')) {
       this.#setFont(run.size, weight)
-      width += this.#context.measureText(run.text).width
+      width += run.gap + this.#context.measureText(run.text).width
     }
     return width
   }
@@ -235,15 +238,15 @@ class CanvasSurface implements Surface {
   }
 
   #texture(texture: Texture, colour: string): CanvasPattern | null {
-    const key = `${texture} ${colour}`
-    const known = this.#textures.get(key)
+    const key = `${texture} ${colour} ${this.pixelRatio}`
+    const known = textures.get(key)
     if (known !== undefined) return known
     const side = Math.round(textureSide * this.pixelRatio)
     const canvas = new OffscreenCanvas(side, side)
     const context: Context | null = canvas.getContext('2d')
     if (context) drawTexture(context, side, texture, colour, this.pixelRatio)
     const pattern = context && this.#context.createPattern(canvas, 'repeat')
-    this.#textures.set(key, pattern)
+    textures.set(key, pattern)
     return pattern
   }
 }

@@ -1,5 +1,5 @@
 import { prepareCanvas } from './canvasSurface.ts'
-import type { Painter } from './surface.ts'
+import type { Frame, Painter } from './surface.ts'
 import { escapeXml, svgSurface } from './svgSurface.ts'
 import { printTheme } from './theme.ts'
 import type { Theme } from './theme.ts'
@@ -28,7 +28,7 @@ export function exportSvg<Data>(
 ): string {
   const frame = frameOf(size)
   const surface = svgSurface()
-  painter(surface, frame, data, theme)
+  painter(surface, inset(frame), data, theme)
   const name = title === undefined ? '' : `<title>${escapeXml(title)}</title>\n`
   return [
     '<?xml version="1.0" encoding="UTF-8"?>',
@@ -75,13 +75,25 @@ export async function paintToPng<Data>(
   if (!surface)
     throw new Error('The figure could not be drawn: this browser gives no 2D canvas of that size. Save it as SVG.')
   surface.rect(frame, { fill: theme.ground })
-  painter(surface, frame, data, theme)
+  painter(surface, inset(frame), data, theme)
   const png = await canvas.convertToBlob({ type: 'image/png' })
   return new Blob([withResolution(new Uint8Array(await png.arrayBuffer()), dotsPerInch)], { type: 'image/png' })
 }
 
-function frameOf(size: FigureSize) {
+function frameOf(size: FigureSize): Frame {
   return { x: 0, y: 0, width: size.width * perMm, height: size.height * perMm }
+}
+
+/** Air around a figure, so that nothing touches the edge of its page. */
+const margin = 2 * perMm
+
+function inset(frame: Frame): Frame {
+  return {
+    x: frame.x + margin,
+    y: frame.y + margin,
+    width: Math.max(1, frame.width - 2 * margin),
+    height: Math.max(1, frame.height - 2 * margin),
+  }
 }
 
 function round(value: number): number {

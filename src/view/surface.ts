@@ -32,6 +32,8 @@ export interface TextRun {
   text: string
   size?: number
   colour?: string
+  /** Room before the run. A space would do on a canvas, but SVG readers differ in what they make of leading spaces. */
+  gap?: number
 }
 export type Label = string | readonly TextRun[]
 

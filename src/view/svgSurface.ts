@@ -117,9 +117,9 @@ class Builder implements SvgSurface {
       : ''
     const body = runs
       .map((run) =>
-        run.size === style.size && run.colour === style.colour
+        run.size === style.size && run.colour === style.colour && run.gap === 0
           ? escapeXml(run.text)
-          : `<tspan font-size="${n(run.size)}" fill="${escapeXml(run.colour)}">${escapeXml(run.text)}</tspan>`,
+          : `<tspan${run.gap === 0 ? '' : ` dx="${n(run.gap)}"`} font-size="${n(run.size)}" fill="${escapeXml(run.colour)}">${escapeXml(run.text)}</tspan>`,
       )
       .join('')
     this.#parts.push(
@@ -128,7 +128,7 @@ class Builder implements SvgSurface {
   }
 
   measure(label: Label, size: number, weight: 'normal' | 'bold' = 'normal'): number {
-    return runsOf(label, size, '').reduce((sum, run) => sum + typeWidth(run.text, run.size, weight), 0)
+    return runsOf(label, size, '').reduce((sum, run) => sum + run.gap + typeWidth(run.text, run.size, weight), 0)
   }
 
   texture(frame: Frame, texture: Texture, colour: string, phase = 0): void {

@@ -68,7 +68,8 @@ export function drawCaption(surface: Surface, frame: Frame, caption: string | un
 function brokenLines(surface: Surface, text: string, size: number, width: number): string[] {
   const lines: string[] = []
   let line = ''
-  for (const word of text.split(/\s+/)) {
+  // Ordinary spaces only: one that does not break holds a number and its unit together.
+  for (const word of text.split(/[ \n]+/)) {
     const longer = line === '' ? word : `${line} ${word}`
     if (line !== '' && surface.measure(longer, size) > width) {
       lines.push(line)

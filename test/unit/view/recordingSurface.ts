@@ -67,7 +67,7 @@ export class RecordingSurface implements Surface {
     } else throw new Error(`no box is known for text turned by ${style.rotation}`)
   }
   measure(label: Label, size: number, weight: 'normal' | 'bold' = 'normal'): number {
-    return runsOf(label, size, '').reduce((sum, run) => sum + typeWidth(run.text, run.size, weight), 0)
+    return runsOf(label, size, '').reduce((sum, run) => sum + run.gap + typeWidth(run.text, run.size, weight), 0)
   }
   texture(frame: Frame, texture: Texture, colour: string): void {
     this.textures.push({ frame, texture, colour })

@@ -64,7 +64,7 @@ describe('figures in SVG', () => {
   it('set units small and quiet', () => {
     const surface = svgSurface()
     surface.text(withUnit('Depth', 'mm', 12, '#555555'), 0, 0, { size: 12, colour: '#000000' })
-    expect(surface.markup()).toContain('Depth<tspan font-size="10.32" fill="#555555">\u2002mm</tspan>')
+    expect(surface.markup()).toContain('Depth<tspan dx="5.4" font-size="10.32" fill="#555555">mm</tspan>')
   })
 
   it('show a part of a picture through a clip', () => {
@@ -102,7 +102,7 @@ describe('the export', () => {
     const { data, info } = await sharp(Buffer.from(svg)).removeAlpha().raw().toBuffer({ resolveWithObject: true })
     // sharp draws at 72 dots per inch unless told otherwise: two inches by one.
     expect([info.width, info.height]).toEqual([144, 72])
-    expect(Math.min(...data.subarray(0, 30))).toBeLessThan(200)
+    expect(data.reduce((least, value) => Math.min(least, value), 255)).toBeLessThan(100)
   })
 
   it('for the page, has CSS pixels and the type of the page', () => {
