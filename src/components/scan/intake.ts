@@ -1,5 +1,6 @@
 import { addSection } from '../../commands/addSection.ts'
 import type { Session } from '../../session/session.svelte.ts'
+import { wordsOf } from '../../session/scanDesk.svelte.ts'
 import { JobCancelled } from '../../session/workerClient.ts'
 
 /** Takes files that were dropped or picked: each scan becomes a section; one that cannot be read is told and changes nothing. */
@@ -9,7 +10,7 @@ export async function intake(session: Session, files: readonly File[]): Promise<
       await takeScan(session, file)
     } catch (error) {
       if (error instanceof JobCancelled) continue
-      session.notices.trouble(error instanceof Error ? error.message : String(error))
+      session.notices.trouble(`${file.name} was not taken in: ${wordsOf(error)}`)
     }
   }
 }
