@@ -13,16 +13,7 @@ export interface Columns {
   headings: { name: string; x: number; width: number }[]
 }
 
-const sideNames: Record<StepId, string> = {
-  scan: 'Probability',
-  count: 'Probability',
-  compare: 'Counts',
-  date: 'Error',
-  rates: 'Error',
-  report: 'Probability',
-}
-
-export function columnsFor(width: number, height: number, step: StepId, depthUnit: string): Columns {
+export function columnsFor(width: number, height: number, step: StepId, depthUnit: string, sideName: string): Columns {
   const fixed: Record<Exclude<ColumnName, 'scan'>, number> = {
     overview: 46,
     axis: 54,
@@ -48,7 +39,7 @@ export function columnsFor(width: number, height: number, step: StepId, depthUni
       heading('Scan', 'scan'),
       heading('Profile', 'profile'),
       heading('Years', 'ladder'),
-      heading(sideNames[step], 'side'),
+      heading(sideName, 'side'),
     ],
   }
 }

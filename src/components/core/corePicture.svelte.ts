@@ -2,6 +2,7 @@ import { marks } from '../../document/layerSet.ts'
 import type { LayerSet } from '../../document/layerSet.ts'
 import type { Session } from '../../session/session.svelte.ts'
 import { buildPyramid } from '../../view/minMaxPyramid.ts'
+import { formatNumber } from '../../view/numbers.ts'
 import { axisToPath, columnToAxis, pathAxis, pathToAxis } from '../../view/pathAxis.ts'
 import type { PathAxis } from '../../view/pathAxis.ts'
 import type { Across, MarkColumn, ProposalColumn, StripSpan, TileGrid, UprightTransect } from '../../view/strip/data.ts'
@@ -127,6 +128,14 @@ export class CorePicture {
   #ladderAxis = $derived.by(() => {
     const ladder = this.#session.detection.found?.ladder
     return ladder ? { position: columnToAxis(this.path, ladder.position), probability: ladder.probability } : null
+  })
+  /** What the last column shows, with its scale: the greatest half width reaches the column's edge. */
+  sideName = $derived.by(() => {
+    const { step, chronology } = this.#session
+    if (step === 'compare') return 'Counts'
+    if (step !== 'date' && step !== 'rates') return 'Probability'
+    const widest = chronology.result ? chronology.result.half95.reduce((most, one) => Math.max(most, one), 0) : 0
+    return widest > 0 ? `95 %, ± ${formatNumber(widest, widest < 10 ? 1 : 0)} a` : '95 %'
   })
   description = $derived.by(() => {
     const { section, count, counting } = this.#session
