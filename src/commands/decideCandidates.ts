@@ -21,7 +21,7 @@ export interface CandidateChoice {
 
 /**
  * Sets boundaries with one mark at candidates, many at once. Left out, with no error: those already decided (a boundary
- * or a rejected proposal lies there), and those inside an event bed or unreadable span.
+ * or a rejected proposal lies there), those inside an event bed or unreadable span, and doublets of one place.
  */
 export function decideCandidates(
   userEvent: string,
@@ -33,7 +33,7 @@ export function decideCandidates(
     const count = needRecord(state.project, 'counts', countId)
     checkAtLeast('within', within, 0)
     for (const position of positions) checkOnPath(state.project, count.transect, 'position', position)
-    const open = positions.filter(
+    const open = distinct(positions).filter(
       (position) =>
         isOpen(count.layers, position, Math.max(within, minimalGap)) &&
         !spanAt(state.project, count.transect, position),
@@ -47,4 +47,13 @@ export function decideCandidates(
 function isOpen(layers: LayerSet, position: number, within: number): boolean {
   const index = nearest(layers, position)
   return index < 0 || Math.abs(layers.position[index] - position) >= within
+}
+
+/** Sorted, and of candidates too near one another to be told apart only the youngest. */
+function distinct(positions: readonly number[]): number[] {
+  const kept: number[] = []
+  for (const position of positions.toSorted((a, b) => a - b)) {
+    if (kept.length === 0 || position - kept[kept.length - 1] >= minimalGap) kept.push(position)
+  }
+  return kept
 }
