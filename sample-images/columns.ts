@@ -40,7 +40,10 @@ function varveAt(couplet: Couplet, silt: number, z: number): { dark: number; coa
   for (const lamina of couplet.laminae) {
     const d = z - lamina.at
     // Sharp above, fading below, like every pulse that settles.
-    const shape = d < 0 ? Math.exp(-((d / (0.35 * lamina.width)) ** 2)) : Math.exp(-((d / lamina.width) ** 2))
+    const shape =
+      d < 0
+        ? Math.exp(-((d / ((lamina.blurred ? 1 : 0.35) * lamina.width)) ** 2))
+        : Math.exp(-((d / lamina.width) ** 2))
     dark += lamina.darkness * shape
     tint += lamina.tint * shape
   }

@@ -26,6 +26,8 @@ import { erosiveBases, mmPerPx, truthOf, type Truth } from './truth.ts'
 const folder = 'sample-images'
 const photographFile = 'askelmere-1.jpg'
 const radiographFile = 'askelmere-1-radiograph.tif'
+/** Pixels of the core's upper end that are on the photograph: 465.7 mm. */
+const width = 9314
 const radiographFrom = 3000
 const radiographTo = 7000
 /** Through the 1650s: a boundary lies just beside it. */
@@ -98,7 +100,6 @@ async function writeTables(facts: DemoFacts): Promise<void> {
 const record = drawRecord(recordSeed)
 const columns = columnsOf(record)
 const bases = erosiveBases(record)
-const width = Math.floor(record.length - 60)
 const truth = truthOf(record, photographFile, width, crack)
 const facts = factsOf(truth, drawCounts(record, truth, 421))
 for (const name of ['scans', 'truth', 'tables']) await mkdir(join(folder, name), { recursive: true })

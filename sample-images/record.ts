@@ -14,6 +14,8 @@ export interface Lamina {
   darkness: number
   /** Rust (+) or olive (-) tint. */
   tint: number
+  /** Not sharp above, as those of a single flood or bloom are. */
+  blurred?: boolean
 }
 
 /** An event bed laid down within one summer: graded, light coarse base (down) to dark fine top (up). */
@@ -51,7 +53,7 @@ export interface Record {
 export const coringYear = 2019
 export const tephraYear = 1783
 const openCouplet = 15
-const yearCount = 421
+const yearCount = 440
 
 /** The seed of the demo core. */
 export const recordSeed = 20190714
@@ -92,7 +94,9 @@ function summerLaminae(random: Random, clay: number, thickness: number, contrast
   }
   if (doubled) {
     const at = clay + room * (0.42 + 0.16 * random.uniform())
-    laminae.push({ at, width: 0.42 * clay + 1, darkness: contrast * (0.6 + 0.2 * random.uniform()), tint: -0.2 })
+    // Nearly a second winter, but it came in gradually: its top is not sharp.
+    const darkness = contrast * (0.42 + 0.2 * random.uniform())
+    laminae.push({ at, width: 0.4 * clay + 1, darkness, tint: -0.2, blurred: true })
   }
   return laminae
 }
