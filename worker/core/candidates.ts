@@ -95,14 +95,14 @@ function steepest(signal: Float64Array, peak: number, base: number, direction: -
   let slope = 0
   let lowest = signal[peak]
   for (let row = peak; row !== base; row += direction) {
+    // The flank ends where the signal has turned up again by a good part of what it fell; the base may lie layers away.
+    lowest = Math.min(lowest, signal[row])
+    if (signal[row] - lowest > 0.2 * (signal[peak] - lowest)) break
     const step = signal[row] - signal[row + direction]
     if (step > slope) {
       slope = step
       best = row
     }
-    // The flank ends where the signal has turned up again by a good part of what it fell; the base may lie layers away.
-    lowest = Math.min(lowest, signal[row])
-    if (signal[row] - lowest > 0.3 * (signal[peak] - lowest)) break
   }
   const stepAt = (row: number) => signal[row] - signal[row + direction]
   const vertex = parabolaVertex(stepAt(best - direction), slope, stepAt(best + direction))

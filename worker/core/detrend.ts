@@ -29,7 +29,7 @@ export interface Detrended {
 /** A window of the trend spans this many layers when the recipe leaves it open. */
 const layersPerWindow = 6
 /** Full width at half height of the smoother, as a share of a layer, when the recipe leaves it open. */
-const smoothingShare = 0.2
+const smoothingShare = 0.15
 
 /** Removes the trend of a profile, smooths what is left and brings it to a common scale. */
 export function* detrendProfile(profile: Profile, recipe: DetrendRecipe): Work<Detrended> {

@@ -14,6 +14,6 @@ export interface Recipe {
 export const defaultRecipe: Recipe = {
   profile: { channel: 'luminance', linear: false, across: 'median', lanes: 9, usableShare: 0.3 },
   detrend: { method: 'moving-median', window: null, smoothing: 'gaussian', smoothingLength: null, standardise: true },
-  candidates: { lamina: 'auto', edge: 'top', prominence: 0.5, distance: null },
+  candidates: { lamina: 'auto', edge: 'top', prominence: 0.1, distance: null },
   ladder: { thickness: null },
 }
