@@ -36,6 +36,8 @@ export class Counting {
   #workbench: Workbench
   #detection: Detection
   #subject: () => Subject
+  /** The cursor was moved off a proposal by hand: what is confirmed is the new place. */
+  #nudged = false
   cursor = $state<number | null>(null)
   /** Other end of the selected stretch; null: one place only. */
   anchor = $state<number | null>(null)
@@ -77,6 +79,7 @@ export class Counting {
     if (!extend) this.anchor = null
     else this.anchor ??= this.cursor
     this.cursor = position
+    this.#nudged = false
   }
 
   /** To the next (+1) or previous (-1) boundary or proposal. */
@@ -119,7 +122,7 @@ export class Counting {
     const from = this.cursor ?? 0
     this.#dispatchChecked(this.#decide(this.#openBetween(Math.min(from, position), position), 'certain'), position)
     this.goTo(position)
-    this.toNextOpen()
+    if (!this.toNextOpen()) this.step(-1)
   }
 
   /** Sets a boundary where the cursor stands; what stands there already is refused by the command. */
@@ -147,7 +150,10 @@ export class Counting {
     const stop = this.stop
     const to = (stop?.position ?? cursor) + distance
     if (stop?.kind === 'mark') this.moveBoundary(this.layers.id[stop.index], to)
-    else this.cursor = to
+    else if (stop || this.#nudged) {
+      this.cursor = to
+      this.#nudged = true
+    }
   }
 
   moveBoundary(id: number, to: number): void {
@@ -221,10 +227,10 @@ export class Counting {
     return !(edit instanceof Fault)
   }
 
-  /** The proposal under the cursor; a bare cursor that was nudged stands for a boundary of its own, except to reject. */
+  /** The proposal under the cursor, or where it was nudged to; a bare cursor stands for nothing and marks nothing. */
   #proposalAtCursor(mark: Mark): number[] {
     if (this.stop) return this.stop.kind === 'proposal' ? [this.stop.position] : []
-    return this.cursor !== null && mark !== 'rejected' ? [this.cursor] : []
+    return this.#nudged && this.cursor !== null && mark !== 'rejected' ? [this.cursor] : []
   }
 
   #openBetween(from: number, to: number): number[] {
