@@ -26,11 +26,18 @@ export const paintConfidence: Painter<ConfidenceData> = (surface, frame, data, t
   })
 }
 
+/** Candidates less probable than this are all but ruled out; a tick at the edge is enough for them. */
+const ruledOut = 0.05
+
 /** Close up: a pin for each boundary, its head filled where it is more likely a year than not. */
 function paintPins(surface: Surface, frame: Frame, data: ConfidenceData, theme: Theme): void {
   const pins: number[] = []
   const heads: { x: number; y: number; likely: boolean }[] = []
   eachRow(data.viewport, data.position, surface.pixelRatio, (i, y) => {
+    if (data.probability[i] < ruledOut) {
+      pins.push(frame.x, frame.y + y, frame.x + 3, frame.y + y)
+      return
+    }
     const x = frame.x + data.probability[i] * frame.width
     pins.push(frame.x, frame.y + y, x, frame.y + y)
     heads.push({ x, y: frame.y + y, likely: data.probability[i] >= 0.5 })
@@ -49,27 +56,43 @@ function paintPins(surface: Surface, frame: Frame, data: ConfidenceData, theme: 
 /** Half height of the stretch over which the mean is taken from afar, CSS pixels. */
 const meanReach = 8
 
-/** From afar: in each row what the least likely boundary lacks to certainty, as a line from the right; over it the mean of a few rows. */
+/**
+ * From afar, what is in doubt: in each row, a line from the right edge for what the least likely of the likely boundaries
+ * lacks to certainty, and one from the left for the likeliest of the unlikely. Over it, the mean of the likely ones.
+ */
 function paintSpread(surface: Surface, frame: Frame, data: ConfidenceData, theme: Theme): void {
   const { viewport, position, probability } = data
   const step = 1 / surface.pixelRatio
   const axisAt = (y: number) => viewport.top + y / viewport.scale
-  const lacking: number[] = []
+  const doubts: number[] = []
   const mean: number[] = []
   let [from, to, row] = [0, 0, lowerBound(position, axisAt(0))]
   for (let y = 0; y < viewport.height; y += step) {
     const line = frame.y + y + step / 2
-    let least = 1
-    for (; row < position.length && position[row] < axisAt(y + step); row++) least = Math.min(least, probability[row])
-    if (least < 1) lacking.push(frame.x + least * frame.width, line, frame.x + frame.width, line)
+    let [likely, unlikely] = [1, 0]
+    for (; row < position.length && position[row] < axisAt(y + step); row++) {
+      if (probability[row] >= 0.5) likely = Math.min(likely, probability[row])
+      else unlikely = Math.max(unlikely, probability[row])
+    }
+    if (likely < 1) doubts.push(frame.x + likely * frame.width, line, frame.x + frame.width, line)
+    if (unlikely > 0) doubts.push(frame.x, line, frame.x + unlikely * frame.width, line)
     from = lowerBound(position, axisAt(y - meanReach), from)
     to = lowerBound(position, axisAt(y + meanReach), to)
-    let sum = 0
-    for (let i = from; i < to; i++) sum += probability[i]
-    mean.push(to > from ? frame.x + (sum / (to - from)) * frame.width : NaN, line)
+    mean.push(frame.x + likelyMean(probability, from, to) * frame.width, line)
   }
-  surface.lines(lacking, { colour: theme.bandNarrow, width: step })
+  surface.lines(doubts, { colour: theme.bandNarrow, width: step })
   surface.polyline(mean, { colour: theme.ink, width: theme.stroke.hair })
+}
+
+/** Mean probability of those boundaries that are more likely years than not; NaN where there is none. */
+function likelyMean(probability: Float64Array, from: number, to: number): number {
+  let [sum, count] = [0, 0]
+  for (let i = from; i < to; i++) {
+    if (probability[i] < 0.5) continue
+    sum += probability[i]
+    count += 1
+  }
+  return count > 0 ? sum / count : NaN
 }
 
 /** Years at the edge of the error column: the greatest error, at least one year. */

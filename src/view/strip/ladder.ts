@@ -2,6 +2,7 @@ import { formatNumber } from '../numbers.ts'
 import type { Frame, Painter, Surface } from '../surface.ts'
 import type { Theme } from '../theme.ts'
 import { toScreen } from '../viewport.ts'
+import type { Viewport } from '../viewport.ts'
 import { densityRows, eachRow, fullDensity, inView, isDense, markAt } from './columns.ts'
 import type { LadderData, MarkColumn, ProposalColumn } from './data.ts'
 import { paintSpans } from './spans.ts'
@@ -67,6 +68,10 @@ function paintProposals(
   theme: Theme,
 ): void {
   const { viewport } = data
+  if (isDense(viewport, proposals.position)) {
+    paintProposalDensity(surface, lane, viewport, proposals, theme)
+    return
+  }
   const left = lane.x + 4
   const longest = lane.width - 8
   const [from, to] = inView(viewport, proposals.position)
@@ -86,6 +91,23 @@ function paintProposals(
   })
   surface.lines(unlikely, { colour: theme.faint, width: theme.stroke.hair, opacity: 0.55 })
   surface.lines(likely, { colour: theme.faint, width: theme.stroke.hair })
+}
+
+/** Far out: the outline of how close the proposals of the most probable ladder stand; open, as single proposals are. */
+function paintProposalDensity(
+  surface: Surface,
+  lane: Frame,
+  viewport: Viewport,
+  { position, chosen }: ProposalColumn,
+  theme: Theme,
+): void {
+  const step = 1 / surface.pixelRatio
+  const ladder = position.filter((_, i) => chosen[i] === 1)
+  const outline: number[] = []
+  densityRows(viewport, ladder, fullDensity(viewport, ladder), step).forEach((density, row) => {
+    outline.push(density > 0 ? lane.x + 2 + density * (lane.width - 6) : NaN, lane.y + (row + 0.5) * step)
+  })
+  surface.polyline(outline, { colour: theme.faint, width: theme.stroke.hair })
 }
 
 function paintRungs(surface: Surface, lane: Frame, data: LadderData, boundaries: MarkColumn, theme: Theme): void {

@@ -26,7 +26,7 @@ export const paintScanMarks: Painter<ScanMarksData> = (surface, frame, data, the
       eachRow(data.viewport, position, surface.pixelRatio, (i, y) => {
         if (chosen[i] !== 1) return
         const [x1, y1, x2, y2] = end(position[i], y)
-        dots.push(x1 - 4, y1, x1 - 1, y1, x2 + 1, y2, x2 + 4, y2)
+        dots.push(x1 - 6, y1, x1 - 1, y1, x2 + 1, y2, x2 + 6, y2)
       })
       cased(surface, dots, theme, theme.overScan.line, 0.9)
     }

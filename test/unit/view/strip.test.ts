@@ -356,21 +356,18 @@ describe('the columns beside', () => {
     expect(surface.markers.map(({ x }) => Math.round(x))).toEqual([21, 57])
   })
 
-  it('show from afar the least probability of each row', () => {
+  it('show from afar what is in doubt in each row: likely boundaries that lack, unlikely ones that might be', () => {
     const { position } = column(20_000)
-    const probability = new Float64Array(20_000).fill(0.99)
-    probability[8000] = 0.1
+    const probability = new Float64Array(20_000).fill(1)
+    probability[8000] = 0.6
+    probability[12_000] = 0.3
     const surface = new RecordingSurface()
-    paintConfidence(
-      surface,
-      { ...frame, width: 106 },
-      { viewport: fit(length, 600), position, probability, cursor: null },
-      lightTheme,
-    )
-    const lacking = surface.segments
-      .filter(({ stroke }) => stroke.colour === lightTheme.bandNarrow)
-      .flatMap((one) => one.ends)
-    expect(Math.min(...lacking.filter((_, i) => i % 4 === 0))).toBeCloseTo(3 + 10, 6)
+    const viewport = fit(length, 600)
+    paintConfidence(surface, { ...frame, width: 106 }, { viewport, position, probability, cursor: null }, lightTheme)
+    const doubts = surface.segments.filter(({ stroke }) => stroke.colour === lightTheme.bandNarrow)
+    const rounded = doubts.flatMap(({ ends }) => ends.map((end) => Math.round(end)))
+    const row = (i: number) => Math.round(Math.floor(toScreen(viewport, position[i])) + 0.5)
+    expect(rounded).toEqual([63, row(8000), 103, row(8000), 3, row(12_000), 33, row(12_000)])
   })
 
   it('widen the error downcore, also between two boundaries that lie out of view', () => {
