@@ -32,10 +32,14 @@ const numbers = (name: string, description: string) => field(name, 'number', des
 const integers = (name: string, description: string) => field(name, 'integer', description)
 const flags = (name: string, description: string) => field(name, 'boolean', description)
 
-/** RFC 4180: a cell with a comma, quote or line break is quoted. */
+/**
+ * RFC 4180: a cell with a comma, quote or line break is quoted. Text that a spreadsheet would run as a formula gets a leading
+ * apostrophe, as in the tables of results.
+ */
 function csvCell(cell: Cell): string {
-  const text = cell === null ? '' : String(cell)
-  return /[",\r\n]/.test(text) ? `"${text.replaceAll('"', '""')}"` : text
+  if (typeof cell !== 'string') return cell === null ? '' : String(cell)
+  const text = /^\s*[=+\-@]/.test(cell) ? `'${cell}` : cell
+  return /[",\r\n]|^\s|\s$/.test(text) ? `"${text.replaceAll('"', '""')}"` : text
 }
 
 function table(
