@@ -1,7 +1,8 @@
 import { createHash } from 'node:crypto'
-import { mkdtempSync, rmSync, writeFileSync } from 'node:fs'
+import { mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
+import { fileURLToPath } from 'node:url'
 import { afterAll, beforeAll, describe, expect, test } from 'vitest'
 import { openSharpScan } from '../../src/headless/sharpScan.ts'
 import type * as Reading from '../../worker/reading/openScan.ts'
@@ -20,7 +21,18 @@ interface Seen {
 
 let folder = ''
 let source: SourcePage
-const files = await scanFiles()
+const others = fileURLToPath(new URL('../fixtures/scans/', import.meta.url))
+const files = [
+  ...(await scanFiles()),
+  ...readdirSync(others)
+    .filter((name) => /\.(tif|png|jpg)$/.test(name))
+    .map((name) => ({
+      name,
+      bytes: readFileSync(others + name),
+      known: null,
+      beyondSharp: /planes/.test(name),
+    })),
+]
 
 beforeAll(async () => {
   folder = mkdtempSync(join(tmpdir(), 'winterclay-reading-'))

@@ -14,8 +14,9 @@ export const longestLzwString = mostCodes
  * from there, so that a strip of a gigabyte passes through a small buffer.
  */
 export class LzwDecoder {
-  /** Output and how much of it is filled. `limit` bytes are asked for; up to a string more may be written. */
+  /** Bytes decoded and not yet taken: output[taken, filled). Before them stands what strings still refer to. */
   output: Uint8Array
+  taken = 0
   filled = 0
   finished = false
   private readonly starts = new Int32Array(mostCodes)
@@ -26,15 +27,18 @@ export class LzwDecoder {
   private bits = 0
   private previousStart = -1
   private previousLength = 0
+  /** Where the strings of the table begin in the output, and, once the table is full, where they end. */
   private historyStart = 0
+  private historyEnd = Infinity
 
   constructor(output: Uint8Array) {
     this.output = output
   }
 
-  /** Decodes input[from, to) until the output holds `limit` bytes or the input ends; returns where the input stands. */
-  decode(input: Uint8Array, from: number, to: number, limit: number): number {
+  /** Decodes input[from, to) until `count` bytes wait to be taken or the input ends; returns where the input stands. */
+  decode(input: Uint8Array, from: number, to: number, count: number): number {
     const { output, starts, lengths } = this
+    const limit = this.taken + count
     let { filled, next, width, buffer, bits, previousStart, previousLength } = this
     let at = from
     while (filled < limit) {
@@ -50,6 +54,7 @@ export class LzwDecoder {
         width = 9
         previousStart = -1
         this.historyStart = filled
+        this.historyEnd = Infinity
         continue
       }
       if (code === endCode) {
@@ -60,6 +65,7 @@ export class LzwDecoder {
         starts[next] = previousStart
         lengths[next] = previousLength + 1
         next++
+        if (next === mostCodes) this.historyEnd = previousStart + previousLength + 1
         if (next === (1 << width) - 1 && width < 12) width++
       }
       if (code < clearCode) {
@@ -84,19 +90,24 @@ export class LzwDecoder {
     return at
   }
 
-  /** Hands over the first `count` bytes of the output and goes on in a new one that starts with what strings still refer to. */
-  take(count: number, capacity: number): Uint8Array {
-    const taken = this.output.subarray(0, count)
-    const keepFrom = Math.min(this.historyStart, count)
-    const kept = this.output.subarray(keepFrom, this.filled)
-    const output = new Uint8Array(Math.max(capacity, kept.length) + longestLzwString)
-    output.set(kept)
-    for (let code = endCode + 1; code < this.next; code++) this.starts[code] -= keepFrom
-    if (this.previousStart >= 0) this.previousStart -= keepFrom
-    this.historyStart -= keepFrom
-    this.filled -= keepFrom
+  /** Hands over `count` decoded bytes and goes on in a new output with room for `next` more. */
+  take(count: number, next: number): Uint8Array {
+    const end = this.taken + count
+    const bytes = this.output.subarray(this.taken, end)
+    const from = this.historyStart
+    // Bytes behind the last string of a full table are not referred to; without this a table never cleared keeps them all.
+    const to = Math.min(this.historyEnd, end)
+    const output = new Uint8Array(to - from + this.filled - end + next + longestLzwString)
+    output.set(this.output.subarray(from, to))
+    output.set(this.output.subarray(end, this.filled), to - from)
+    for (let code = endCode + 1; code < this.next; code++) this.starts[code] -= from
+    this.historyStart = 0
+    this.historyEnd -= from
+    if (this.previousStart >= 0) this.previousStart -= from
+    this.taken = to - from
+    this.filled = to - from + this.filled - end
     this.output = output
-    return taken
+    return bytes
   }
 }
 

@@ -49,13 +49,13 @@ async function* lzwBands(packed: AsyncGenerator<Uint8Array>, lengths: number[]):
   for await (const input of packed) {
     for (let at = 0; ;) {
       at = decoder.decode(input, at, input.length, lengths[band])
-      if (decoder.filled < lengths[band]) break
+      if (decoder.filled - decoder.taken < lengths[band]) break
       yield decoder.take(lengths[band], lengths[band + 1] ?? 0)
       if (++band === lengths.length) return
     }
     if (decoder.finished) break
   }
-  throw tooShort('LZW', decoder.filled, lengths[band])
+  throw tooShort('LZW', decoder.filled - decoder.taken, lengths[band])
 }
 
 async function* packBitsBands(packed: AsyncGenerator<Uint8Array>, lengths: number[]): AsyncGenerator<Uint8Array> {
