@@ -4,7 +4,7 @@ import type { JpegLayout } from './jpeg.ts'
 import { pagedSource } from './bytes.ts'
 import { readPngLayout } from './png.ts'
 import type { PngLayout } from './png.ts'
-import type { ByteSource, ScanInfo } from './scanFile.ts'
+import type { ByteSource, ScanInfo, StatedResolution } from './scanFile.ts'
 import { sniff } from './sniff.ts'
 import { readTiffLayout } from './tiff.ts'
 import type { TiffLayout } from './tiff.ts'
@@ -21,6 +21,12 @@ export type Description = { info: Omit<ScanInfo, 'sha256' | 'levels'> } & (
 
 /** Finds out what a file is and whether it is whole. Throws a Fault that says what is wrong with it and what to do. */
 export async function describeScan(file: ByteSource, name: string): Promise<Description> {
+  const description = await describeFormat(file, name)
+  description.info.notes.push(...placeholderNotes(description.info.resolution))
+  return description
+}
+
+async function describeFormat(file: ByteSource, name: string): Promise<Description> {
   const source = pagedSource(file)
   const { format, notes } = await sniff(source, name)
   const named = { name, bytes: file.size }
@@ -52,6 +58,15 @@ export async function describeScan(file: ByteSource, name: string): Promise<Desc
     ...described,
     info: { ...named, ...shape, format, notes: [...notes, ...described.layout.notes, ...alphaNotes(channels)] },
   }
+}
+
+/** 72 and 96 per inch stand in countless files whose writers knew no resolution (common practice, no source). */
+function placeholderNotes(resolution: StatedResolution | null): string[] {
+  const perInch = resolution ? Math.round(resolution.xPerMm * 25.4) : 0
+  if (perInch !== 72 && perInch !== 96) return []
+  return [
+    `the stated resolution, ${perInch} per inch, is what many programs write when they know none: check it on a ruler`,
+  ]
 }
 
 function alphaNotes(channels: number): string[] {
