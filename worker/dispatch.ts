@@ -1,5 +1,7 @@
 import { Fault } from './check.ts'
+import { compareCounts } from './core/agreement.ts'
 import { buildChronology } from './core/chronology.ts'
+import { readCountTable } from './core/countTable.ts'
 import { paintSamples, stretchedDisplay } from './core/display.ts'
 import { runCount } from './core/ladder.ts'
 import { extractProfile } from './core/profile.ts'
@@ -64,6 +66,8 @@ const handlers: { [K in JobKind]: Handler<K> } = {
     const [height, width] = upright.shape as [number, number]
     return { width, height, rgba: paintSamples(upright, display, open.info.bits) }
   },
+  countTable: ({ text, name, columns }) => readCountTable(text, name, columns),
+  agreement: ({ counts }) => compareCounts(counts),
   chronology: (request) => buildChronology(request),
   thickness: ({ thickness, window }) => ({
     summary: thicknessSummary(thickness),

@@ -1,5 +1,8 @@
+import type { Agreement } from './core/agreement.ts'
 import type { Candidates } from './core/candidates.ts'
 import type { Chronology, ChronologyRequest } from './core/chronology.ts'
+import type { CountColumns, CountTable } from './core/countTable.ts'
+import type { CounterMarks } from './core/counterMarks.ts'
 import type { Detrended } from './core/detrend.ts'
 import type { Display } from './core/display.ts'
 import type { Ladder, Span } from './core/ladder.ts'
@@ -37,6 +40,10 @@ export interface Jobs {
     reply: { width: number; height: number; rgba: Uint8ClampedArray<ArrayBuffer> }
   }
   profile: { request: { scan: string; transect: Transect; recipe: ProfileRecipe }; reply: Profile }
+  /** A count made elsewhere, read from CSV text with every bad row named. */
+  countTable: { request: { text: string; name: string; columns: CountColumns }; reply: CountTable }
+  /** Repeat counts of one stretch, aligned and compared. */
+  agreement: { request: { counts: CounterMarks[] }; reply: Agreement }
   /** Years and their error at every boundary of a count. */
   chronology: { request: ChronologyRequest; reply: Chronology }
   /** Figures and running mean of a thickness series. */

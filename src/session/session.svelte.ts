@@ -3,6 +3,7 @@ import type { Count, Section, SectionSpan, SectionTransect } from '../document/p
 import type { Cause } from '../document/transaction.ts'
 import { Autosave } from './autosave.svelte.ts'
 import { ChronologyDesk, countedBoundaries } from './chronologyDesk.svelte.ts'
+import { Comparison } from './comparison.svelte.ts'
 import { Counting } from './counting.svelte.ts'
 import { Detection } from './detection.svelte.ts'
 import { Notices } from './notices.svelte.ts'
@@ -35,6 +36,7 @@ export class Session {
   readonly detection: Detection
   readonly counting: Counting
   readonly chronology: ChronologyDesk
+  readonly comparison: Comparison
   step = $state<StepId>('scan')
   #sectionId = $state('')
   #countId = $state('')
@@ -51,6 +53,7 @@ export class Session {
       cause: this.cause,
     }))
     this.chronology = new ChronologyDesk(client, () => this.chronologyRequest)
+    this.comparison = new Comparison(client, () => this.compared)
     this.autosave.onFailure = (words) => this.notices.trouble(words)
   }
 
@@ -83,6 +86,12 @@ export class Session {
   })
   /** Counts with at least one boundary: a count just begun says nothing of the error yet. */
   counted: readonly Count[] = $derived(this.counts.filter(({ layers }) => layers.position.length > 0))
+  /** The counts of the transect at hand, by name, that can be set against one another. */
+  compared = $derived.by(() =>
+    this.counted
+      .filter(({ transect }) => transect === this.transect?.id)
+      .map((count) => ({ name: this.countName(count), count })),
+  )
   /** Calendar year of the youngest counted varve; null where the count floats. */
   anchorYear: number | null = $derived.by(() => {
     const { coringYear, topIntact, topYearOpen } = this.workbench.project.core

@@ -129,6 +129,13 @@ export class CorePicture {
     const ladder = this.#session.detection.found?.ladder
     return ladder ? { position: columnToAxis(this.path, ladder.position), probability: ladder.probability } : null
   })
+  /** Aligned sites of the comparison, on the axis; null while the columns are not those it was made from. */
+  #sites = $derived.by(() => {
+    const { result } = this.#session.comparison
+    if (!result || result.totals.length !== this.#session.compared.length) return null
+    const { position, label } = result.alignment
+    return { position: columnToAxis(this.path, position), own: columnToAxis(this.path, result.own), label }
+  })
   /** What the last column shows, with its scale: the greatest half width reaches the column's edge. */
   sideName = $derived.by(() => {
     const { step, chronology } = this.#session
@@ -157,9 +164,9 @@ export class CorePicture {
   across(width: number): Across {
     const { viewport } = this.#core
     const breadth = this.size?.breadth ?? 1
-    // The whole core is seen with its full breadth; closer in, at true proportions around the transect.
-    if (viewport.scale * breadth < width * 0.2)
-      return wholeAcross(breadth, Math.min(width, 180 + breadth * viewport.scale))
+    // From afar a core is a thread: its breadth is drawn out until, closer in, true proportions are broader than that.
+    const least = Math.min(width, 220)
+    if (breadth * viewport.scale < least) return wholeAcross(breadth, least)
     const middle = toAxis(viewport, viewport.height / 2)
     const centre = this.upright ? pathAcrossAt(this.upright, middle) : breadth / 2
     return trueAcross(viewport, breadth, width, centre)
@@ -329,11 +336,8 @@ export class CorePicture {
     const { viewport } = this.#core
     const { step } = this.#session
     if (step === 'compare') {
-      const counters = this.#session.counts.map((count) => ({
-        name: this.#session.countName(count),
-        column: this.column(count.layers),
-      }))
-      const data = { viewport, counters, sites: null, cursor: this.cursorAxis }
+      const counters = this.#session.compared.map(({ name, count }) => ({ name, column: this.column(count.layers) }))
+      const data = { viewport, counters, sites: this.#sites, cursor: this.cursorAxis }
       return (surface) => paintCompare(surface, frames.side, data, theme)
     }
     if (step === 'date' || step === 'rates') {

@@ -1,0 +1,43 @@
+import type { Agreement } from '../../worker/core/agreement.ts'
+import type { Count } from '../document/project.ts'
+import { countedBoundaries } from './chronologyDesk.svelte.ts'
+import { wordsOf } from './scanDesk.svelte.ts'
+import { JobCancelled } from './workerClient.ts'
+import type { WorkerClient } from './workerClient.ts'
+
+/** A count to be compared, under the name it is written by. */
+export interface NamedCount {
+  name: string
+  count: Count
+}
+
+/** The counts of the transect at hand set against one another. */
+export class Comparison {
+  #client: WorkerClient
+  #counts: () => readonly NamedCount[]
+  result = $state.raw<Agreement | null>(null)
+  failure = $state('')
+
+  constructor(client: WorkerClient, counts: () => readonly NamedCount[]) {
+    this.#client = client
+    this.#counts = counts
+  }
+
+  /** Compares the counts as they stand; called whenever they may have changed. */
+  async follow(): Promise<void> {
+    const counts = this.#counts().map(({ name, count }) => ({ name, ...countedBoundaries(count.layers), range: null }))
+    this.failure = ''
+    if (counts.length < 2) {
+      this.#client.cancel('agreement')
+      this.result = null
+      return
+    }
+    try {
+      this.result = await this.#client.run('agreement', { counts }, { slot: 'agreement' })
+    } catch (error) {
+      if (error instanceof JobCancelled) return
+      this.result = null
+      this.failure = wordsOf(error)
+    }
+  }
+}
