@@ -14,7 +14,12 @@ export type Reader<T> = (value: unknown, at: string) => T
 export type Json = null | boolean | number | string | readonly Json[] | { readonly [key: string]: Json }
 
 export function refuse(at: string, value: unknown, rule: string): never {
-  throw new Fault('format', at, value, `${at} must be ${rule}; it is ${describe(value)}`)
+  throw new Fault('format', at, value, `${named(at)} must be ${rule}; it is ${describe(value)}`)
+}
+
+/** A place as it stands in a message; the outermost has no name of its own. */
+function named(at: string): string {
+  return at === '' ? 'this file' : at
 }
 
 export function text(most: number): Reader<string> {
@@ -148,7 +153,7 @@ export function someOf<T extends object>(fields: { readonly [K in keyof T]-?: Re
 }
 
 function unknownKey(at: string, key: string, names: readonly string[]): never {
-  throw new Fault('format', at, key, `${at} has an unknown key ${describe(key)}; known are ${names.join(', ')}`)
+  throw new Fault('format', at, key, `${named(at)} has an unknown key ${describe(key)}; known are ${names.join(', ')}`)
 }
 
 function join(at: string, key: string): string {
