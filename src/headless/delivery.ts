@@ -1,5 +1,5 @@
-import { access, constants, mkdir, writeFile } from 'node:fs/promises'
-import { join } from 'node:path'
+import { access, constants, mkdir, stat, writeFile } from 'node:fs/promises'
+import { dirname, join, resolve } from 'node:path'
 import { Fault } from '../../worker/check.ts'
 import { argumentFault, textOption } from './arguments.ts'
 import { inWords } from './files.ts'
@@ -24,10 +24,23 @@ export async function deliveryOf(call: Call): Promise<Delivery> {
 
 export async function makeFolder(folder: string): Promise<void> {
   try {
-    await mkdir(folder, { recursive: true })
+    await makeWithParents(resolve(folder))
     await access(folder, constants.W_OK)
   } catch (error) {
     throw new Fault('argument', '--out', folder, `cannot write into the folder ${folder}: ${inWords(error)}`)
+  }
+}
+
+/** Level by level: where a file system makes no folders (/proc), Node's own recursive mkdir does not come back. */
+async function makeWithParents(folder: string): Promise<void> {
+  const isThere = async () => (await stat(folder).catch(() => null))?.isDirectory() === true
+  if (await isThere()) return
+  if (dirname(folder) !== folder) await makeWithParents(dirname(folder))
+  try {
+    await mkdir(folder)
+  } catch (error) {
+    // Another run may have made it in between.
+    if (!(await isThere())) throw error
   }
 }
 

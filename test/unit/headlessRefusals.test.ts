@@ -46,7 +46,10 @@ describe('bad arguments are refused in one line', () => {
     [['count', 'scan.png'], /^winterclay count: give --out DIR for files, --json for standard output, or both$/],
     [['count', 'scan.png', '--out', ''], /--out needs a value/],
     [['count', 'scan.png', '--out', 'file'], /cannot write into the folder .*file: a file of that name is in the way/],
-    [['count', 'scan.png', '--out', 'file/below'], /cannot write into the folder .*: a part of its path is a file/],
+    [
+      ['count', 'scan.png', '--out', 'file/below'],
+      /cannot write into the folder .*: a file of that name is in the way/,
+    ],
     [['count', 'scan.png', '--colour', 'red', '--out', 'OUT'], /Unknown option '--colour'/],
     [['count', 'scan.png', '--mm-per-px', 'NaN', '--out', 'OUT'], /--mm-per-px must be a number; it is "NaN"/],
     [
