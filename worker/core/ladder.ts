@@ -78,7 +78,7 @@ export function* buildLadder(
   }
   const thickness = startThickness(candidates, rows, recipe, detrended)
   const ground = layGround(rows, sorted, detrended?.signal ?? null, thickness(rows / 2))
-  const fit = yield* fitLadder(candidates, ground, fixed, thickness)
+  const fit = yield* fitLadder({ candidates, ground, fixed }, thickness)
   return ladderOf(fit)
 }
 

@@ -22,10 +22,10 @@ export interface Features {
  * The features, and mean and standard deviation of the prior of the coefficient of each. Means are round figures near what
  * regression on drawn cores of all types gives; deviations are wide enough for any one type.
  */
-const features = ['log prominence', 'log edge strength', 'continuity'] as const
+const features = ['log prominence', 'log edge strength', 'continuity', 'log width'] as const
 export const featureCount = features.length
-const priorMean = [3, 1.5, 2, 1]
-const priorDeviation = [1.5, 1, 1, 1]
+const priorMean = [4, 1.2, 3, 2, 1.5]
+const priorDeviation = [1.2, 0.7, 1.2, 0.7, 0.7]
 /** Looks alone never say more than this. */
 const mostLogOdds = 6
 /** Logs of features are bounded: beyond a twelfth or three times the usual nothing more is learned. */
@@ -36,37 +36,50 @@ const mostLog = 1.1
 export interface Reference {
   logProminence: number
   logEdge: number
+  /** Width over local thickness. */
+  logWidth: number
 }
 
 const logOf = (value: number, least: number) => Math.log(Math.max(value, least))
 const bounded = (value: number) => (Number.isNaN(value) ? 0 : Math.max(leastLog, Math.min(mostLog, value)))
 
 /** Before anything is believed: the middle of as many of the strongest candidates as there should be layers. */
-export function firstReference(candidates: Candidates, layers: number): Reference {
+export function firstReference(candidates: Candidates, width: Float64Array, layers: number): Reference {
   const middle = (column: Float64Array) => {
     const sorted = column.filter((value) => value > 0).sort()
     if (sorted.length === 0) return 0
     const strong = Math.max(1, Math.min(sorted.length, Math.round(layers)))
     return Math.log(sorted[sorted.length - 1 - Math.floor(strong / 2)])
   }
-  return { logProminence: middle(candidates.prominence), logEdge: middle(candidates.edgeStrength) }
+  return {
+    logProminence: middle(candidates.prominence),
+    logEdge: middle(candidates.edgeStrength),
+    logWidth: middle(width),
+  }
 }
 
 /** Mean looks of the candidates by their belief. */
-export function referenceOf(candidates: Candidates, belief: Float64Array, before: Reference): Reference {
+export function referenceOf(
+  candidates: Candidates,
+  width: Float64Array,
+  belief: Float64Array,
+  before: Reference,
+): Reference {
   let weight = 5
   let prominence = weight * before.logProminence
   let edge = weight * before.logEdge
+  let breadth = weight * before.logWidth
   for (let i = 0; i < belief.length; i++) {
-    if (!(candidates.prominence[i] > 0 && candidates.edgeStrength[i] > 0)) continue
+    if (!(candidates.prominence[i] > 0 && candidates.edgeStrength[i] > 0 && width[i] > 0)) continue
     weight += belief[i]
     prominence += belief[i] * Math.log(candidates.prominence[i])
     edge += belief[i] * Math.log(candidates.edgeStrength[i])
+    breadth += belief[i] * Math.log(width[i])
   }
-  return { logProminence: prominence / weight, logEdge: edge / weight }
+  return { logProminence: prominence / weight, logEdge: edge / weight, logWidth: breadth / weight }
 }
 
-export function featuresOf(candidates: Candidates, reference: Reference): Features {
+export function featuresOf(candidates: Candidates, width: Float64Array, reference: Reference): Features {
   const count = candidates.position.length
   const values = new Float64Array(count * featureCount)
   for (let i = 0; i < count; i++) {
@@ -74,12 +87,22 @@ export function featuresOf(candidates: Candidates, reference: Reference): Featur
     values[at] = bounded(logOf(candidates.prominence[i], 1e-3) - reference.logProminence)
     values[at + 1] = bounded(logOf(candidates.edgeStrength[i], 1e-3) - reference.logEdge)
     values[at + 2] = bounded(candidates.continuity[i] - 0.9)
+    // A wide lamina is as good as a usual one; a narrow one is often grain that survived the smoothing.
+    values[at + 3] = Math.min(0.5, bounded(logOf(width[i], 1e-3) - reference.logWidth))
   }
   return { count, values }
 }
 
-export function priorEvidence(): Evidence {
-  return { coefficients: Float64Array.from(priorMean) }
+/** Evidence to start from: the prior's, with a constant of its own. */
+export function startEvidence(constant: number): Evidence {
+  return { coefficients: Float64Array.from(priorMean, (mean, k) => (k === 0 ? constant : mean)) }
+}
+
+/** Log density of the coefficients' prior, up to a constant. */
+export function logPrior({ coefficients }: Evidence): number {
+  let log = 0
+  for (let k = 0; k < coefficients.length; k++) log -= 0.5 * ((coefficients[k] - priorMean[k]) / priorDeviation[k]) ** 2
+  return log
 }
 
 /** Log odds of each candidate. */

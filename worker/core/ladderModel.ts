@@ -1,7 +1,15 @@
 import type { Work } from '../work.ts'
 import type { Candidates } from './candidates.ts'
-import { featuresOf, firstReference, learnEvidence, logOddsOf, priorEvidence, referenceOf } from './ladderEvidence.ts'
-import type { Evidence } from './ladderEvidence.ts'
+import {
+  featuresOf,
+  firstReference,
+  learnEvidence,
+  logOddsOf,
+  logPrior,
+  referenceOf,
+  startEvidence,
+} from './ladderEvidence.ts'
+import type { Evidence, Features, Reference } from './ladderEvidence.ts'
 import { evenInnerLaw } from './layerPairs.ts'
 import type { YearLaw } from './layerPairs.ts'
 import type { Ground } from './ladderGround.ts'
@@ -20,7 +28,6 @@ export interface LadderModel {
   evidence: Evidence
   /** Share of years that left no candidate. */
   missed: number
-  rounds: number
 }
 
 /** One part of the core between hiatuses, counted. */
@@ -28,50 +35,140 @@ export interface CountedPart extends SitePart {
   messages: Messages
 }
 
-const rounds = 12
-/** Priors, each worth so many layers: spread of log thickness, missed years, unmarked beds, false candidates per layer. */
+/** Rounds of EM from each start, and from the best of them. */
+const trialRounds = 5
+const finalRounds = 8
+/**
+ * Starts: the thickness found beforehand, half and twice of it, and whether laminae weaker than their neighbours are first
+ * taken for years of their own or for second laminae of a year (the constant of the evidence).
+ */
+const starts = [
+  { scale: 1, constant: 4 },
+  { scale: 1, constant: 1.5 },
+  { scale: 2, constant: 1.5 },
+  { scale: 0.5, constant: 4 },
+]
+/** Priors, each worth so many layers: spread of log thickness, missed years, unmarked beds, inner laminae per layer. */
 const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003, inner: 0.3 }
 
+/** What the fit works on. */
+interface Task {
+  candidates: Candidates
+  ground: Ground
+  fixed: Float64Array
+}
+
+/** Present parameters, and what follows from them. */
+interface State extends LadderModel {
+  reference: Reference
+  features: Features
+}
+
 /**
- * Expectation-maximisation (Dempster, Laird & Rubin 1977): the ladder's probabilities under the present parameters,
- * then the parameters that fit them, a fixed number of rounds.
+ * Expectation-maximisation (Dempster, Laird & Rubin 1977): the ladder's probabilities under the present parameters, then the
+ * parameters that fit them, a fixed number of rounds, from several starts; the start that explains the candidates best is
+ * taken to its end.
  */
 export function* fitLadder(
-  candidates: Candidates,
-  ground: Ground,
-  fixed: Float64Array,
+  task: Task,
   thickness: (position: number) => number,
 ): Work<{ model: LadderModel; parts: CountedPart[] }> {
-  const field = new ThicknessField(ground, thickness)
-  const layers = field.coordinate(ground.rows)
-  let reference = firstReference(candidates, layers)
-  let features = featuresOf(candidates, reference)
-  let law: YearLaw = { thickness: thicknessLaw(prior.sigma, prior.bedShare), inner: evenInnerLaw(prior.inner) }
-  let missed = prior.missed
-  let evidence = priorEvidence()
-  let parts: CountedPart[] = []
-  for (let round = 0; round < rounds; round++) {
-    yield { stage: 'ladder', done: round, total: rounds }
-    const logWeight = logOddsOf(features, evidence)
-    parts = laySites(candidates, logWeight, ground, field, fixed, missed).map((part) => ({
-      ...part,
-      messages: forwardBackward(part.stretch, law),
-    }))
-    if (round === rounds - 1) break
-    const belief = beliefs(candidates.position.length, parts)
-    const found = layerStatistics(parts, law, field)
-    law = {
-      thickness: thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers)),
-      inner: found.inner(prior.inner, prior.layers),
+  const total = starts.length * trialRounds + finalRounds
+  let best: State | null = null
+  let most = -Infinity
+  let done = 0
+  for (const { scale, constant } of starts) {
+    const state = begin(task, (position) => scale * thickness(position), constant)
+    let parts = expect(task, state)
+    for (let round = 0; round < trialRounds; round++) {
+      yield { stage: 'ladder', done: done++, total }
+      improve(task, state, parts)
+      parts = expect(task, state)
     }
-    followThickness(field, found.count, found.logSum)
-    const { years, hidden } = tally(parts)
-    missed = Math.min(0.2, (hidden + prior.missed * 4 * prior.layers) / (years + 4 * prior.layers))
-    reference = referenceOf(candidates, belief, reference)
-    features = featuresOf(candidates, reference)
-    evidence = learnEvidence(features, belief, evidence)
+    const evidence = logEvidence(task, state, parts)
+    if (best === null || evidence > most) [best, most] = [state, evidence]
   }
-  return { model: { law, field, evidence, missed, rounds }, parts }
+  const state = best!
+  let parts = expect(task, state)
+  for (let round = 0; round < finalRounds; round++) {
+    yield { stage: 'ladder', done: done++, total }
+    improve(task, state, parts)
+    parts = expect(task, state)
+  }
+  const { law, field, evidence, missed } = state
+  return { model: { law, field, evidence, missed }, parts }
+}
+
+function relativeWidth({ candidates }: Task, field: ThicknessField): Float64Array {
+  return candidates.width.map((width, i) => width / field.medianAt(candidates.peak[i]))
+}
+
+function begin(task: Task, thickness: (position: number) => number, constant: number): State {
+  const field = new ThicknessField(task.ground, thickness)
+  const width = relativeWidth(task, field)
+  const reference = firstReference(task.candidates, width, field.coordinate(task.ground.rows))
+  return {
+    field,
+    law: { thickness: thicknessLaw(prior.sigma, prior.bedShare), inner: evenInnerLaw(prior.inner) },
+    missed: prior.missed,
+    evidence: startEvidence(constant),
+    reference,
+    features: featuresOf(task.candidates, width, reference),
+  }
+}
+
+function expect({ candidates, ground, fixed }: Task, { features, evidence, field, law, missed }: State): CountedPart[] {
+  const logWeight = logOddsOf(features, evidence)
+  return laySites(candidates, logWeight, ground, field, fixed, missed).map((part) => ({
+    ...part,
+    messages: forwardBackward(part.stretch, law),
+  }))
+}
+
+function improve(task: Task, state: State, parts: CountedPart[]): void {
+  const belief = beliefs(task.candidates.position.length, parts)
+  const found = layerStatistics(parts, state.law, state.field)
+  state.law = {
+    thickness: thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers)),
+    inner: found.inner(prior.inner, prior.layers),
+  }
+  followThickness(state.field, found.count, found.logSum)
+  const { years, hidden } = tally(parts)
+  state.missed = Math.min(0.2, (hidden + prior.missed * 4 * prior.layers) / (years + 4 * prior.layers))
+  const width = relativeWidth(task, state.field)
+  state.reference = referenceOf(task.candidates, width, belief, state.reference)
+  state.features = featuresOf(task.candidates, width, state.reference)
+  state.evidence = learnEvidence(state.features, belief, state.evidence)
+}
+
+/**
+ * Log of the probability of the candidates' places and looks under a state, up to what all states share: the ladders' sum, times for
+ * each candidate its density as an inner lamina, (N / layers) P(no year | looks) p(looks) / local thickness.
+ */
+function logEvidence(
+  { candidates, ground }: Task,
+  { features, evidence, field, law }: State,
+  parts: CountedPart[],
+): number {
+  const odds = logOddsOf(features, evidence)
+  let layers = 1
+  let log = logPrior(evidence)
+  for (const { messages } of parts) {
+    log += messages.logTotal
+    for (const one of messages.probability) layers += one
+  }
+  const density = Math.log(candidates.position.length / layers)
+  for (const { candidate } of parts) {
+    for (const i of candidate) {
+      if (i < 0) continue
+      log += density - Math.log1p(Math.exp(odds[i])) - Math.log(field.medianAt(candidates.position[i]))
+    }
+  }
+  // Ground that no layer holds (long beds, ends) must not take in candidates for nothing: there they fall at the same rate.
+  const held = layers * law.thickness.mean
+  return (
+    log - (law.inner.rate + candidates.position.length / layers - 1) * Math.max(0, field.coordinate(ground.rows) - held)
+  )
 }
 
 /** Posterior of each candidate; 0 for those no site stands for. */

@@ -26,7 +26,7 @@ export class LayerStatistics {
   /** Posterior mode of the spread, with a prior worth `layers` layers; the wide part of the law is taken out. */
   sigma(prior: number, layers: number): number {
     const variance = (this.squares / wideInflation + prior * prior * layers) / (this.regular + layers)
-    return Math.max(0.07, Math.min(0.6, Math.sqrt(variance)))
+    return Math.max(0.07, Math.min(0.6, 1.15 * Math.sqrt(variance)))
   }
 
   /** Inner laminae per layer and where they lie; the prior is `prior` of them a layer, evenly, worth `layers` layers. */
