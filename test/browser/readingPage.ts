@@ -12,17 +12,17 @@ const blank = `<!doctype html><title>blank</title><input type="file" id="files" 
 
 /** What a page of `openSourcePage` offers to functions evaluated in it: `(globalThis as unknown as Loading<Module>).load`. */
 export interface Loading<Module> {
-  load(address: string): Promise<Module>
+  load: (address: string) => Promise<Module>
 }
 
 /** A blank page in a real Chromium that can import the project's source files, and pick files from disk. */
 export interface SourcePage {
   page: Page
   /** Address under which the page imports a source file, by its path in the project. */
-  address(path: string): string
+  address: (path: string) => string
   /** Puts files into the page's file input `#files`. */
-  pick(paths: string[]): Promise<void>
-  close(): Promise<void>
+  pick: (paths: string[]) => Promise<void>
+  close: () => Promise<void>
 }
 
 export async function openSourcePage(extraArguments: string[] = []): Promise<SourcePage> {
@@ -48,7 +48,7 @@ export async function openSourcePage(extraArguments: string[] = []): Promise<Sou
     page,
     address: (path) => `${url}@fs/${root.replace(/^\//, '')}${path}`,
     pick: (paths) => page.setInputFiles('#files', paths),
-    async close() {
+    close: async () => {
       await browser.close()
       await server.close()
     },
