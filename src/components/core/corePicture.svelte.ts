@@ -169,7 +169,7 @@ export class CorePicture {
     if (breadth * viewport.scale < least) return wholeAcross(breadth, least)
     const middle = toAxis(viewport, viewport.height / 2)
     const centre = this.upright ? pathAcrossAt(this.upright, middle) : breadth / 2
-    return trueAcross(viewport, breadth, width, centre)
+    return trueAcross(viewport, breadth, width, Math.min(breadth, Math.max(0, centre + this.#core.shift)))
   }
 
   requestTiles(columns: Columns): void {

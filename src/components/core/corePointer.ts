@@ -21,7 +21,7 @@ const clickSlack = 4
 
 type Drag =
   | { kind: 'click'; x: number; y: number; column: ColumnName }
-  | { kind: 'pan'; y: number }
+  | { kind: 'pan'; x: number; y: number }
   | { kind: 'overview' }
   | { kind: 'boundary'; id: number }
   | { kind: 'transect'; handle: TransectHandle; from: UprightPoint; start: UprightTransect }
@@ -56,7 +56,10 @@ export class CorePointer {
     // A pinch on a touch pad arrives as a wheel with the control key.
     if (event.ctrlKey || event.metaKey) this.#core.zoom(Math.exp(-event.deltaY * lines * 0.01), y)
     else if (event.shiftKey) this.#core.zoom(Math.exp(-(event.deltaY || event.deltaX) * lines * 0.0025), y)
-    else this.#core.scroll(event.deltaY * lines)
+    else {
+      this.#core.scroll(event.deltaY * lines)
+      this.#core.slide(event.deltaX * lines)
+    }
   }
 
   down(event: PointerEvent): void {
@@ -65,7 +68,7 @@ export class CorePointer {
     const column = columnAt(this.#around().columns, event.offsetX)
     const y = event.offsetY - headroom
     if (!column || event.button === 1) {
-      this.#drag = { kind: 'pan', y }
+      this.#drag = { kind: 'pan', x: event.offsetX, y }
       return
     }
     if (column === 'overview') {
@@ -88,13 +91,14 @@ export class CorePointer {
       this.#goByOverview(y)
     } else if (drag.kind === 'pan') {
       this.#core.scroll(drag.y - y)
-      this.#drag = { kind: 'pan', y }
+      this.#core.slide(drag.x - event.offsetX)
+      this.#drag = { kind: 'pan', x: event.offsetX, y }
     } else if (drag.kind === 'boundary') {
       this.#core.dragged = { id: drag.id, axis: point.axis }
     } else if (drag.kind === 'transect') {
       this.#core.draft = dragged(drag.start, drag.handle, drag.from, point)
     } else if (Math.hypot(event.offsetX - drag.x, y - drag.y) > clickSlack) {
-      this.#drag = { kind: 'pan', y }
+      this.#drag = { kind: 'pan', x: event.offsetX, y }
     }
   }
 

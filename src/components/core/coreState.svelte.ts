@@ -10,6 +10,8 @@ export type Tool = 'transect' | 'ruler'
 export class CoreState {
   viewport = $state.raw<Viewport>(fit(1000, 600))
   tool = $state<Tool>('transect')
+  /** How far the view was moved sideways off the transect, across pixels. */
+  shift = $state(0)
   /** Where the pointer is, axis and across pixels. */
   pointer = $state.raw<UprightPoint | null>(null)
   /** The transect while it is dragged; becomes one transaction when let go. */
@@ -29,6 +31,7 @@ export class CoreState {
     if (scan !== this.#scan || length !== this.#length) {
       this.#scan = scan
       this.#length = length
+      this.shift = 0
       this.viewport = fit(length, height)
     } else if (height !== this.viewport.height) {
       this.viewport = resize(this.viewport, height)
@@ -43,7 +46,13 @@ export class CoreState {
     this.viewport = zoomAt(this.viewport, y, factor)
   }
 
+  /** Moves the view sideways by CSS pixels; a ruler or label beside the transect comes into sight. */
+  slide(dx: number): void {
+    this.shift += dx / this.viewport.scale
+  }
+
   whole(): void {
+    this.shift = 0
     this.viewport = fit(this.viewport.length, this.viewport.height)
   }
 
