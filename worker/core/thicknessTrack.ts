@@ -13,6 +13,9 @@ const layersPerWindow = 12
 /** A lamina must stand out by this many local mean deviations, and by this many of what the lanes disagree by. */
 const leastStrength = 1.4
 const leastOverNoise = 4
+/** Rows with less than this share of the usual deviation are quiet; a window needs this share of rows that are not. */
+const quietShare = 0.4
+const leastHeard = 0.3
 /** A scale fits where the layers seen at it stand at most so many times its own length apart. */
 const fitting = 1.5
 
@@ -61,7 +64,7 @@ function splitLanes({ intensity, lanes, laneCount }: Profile): { mean: Float64Ar
   return { mean: intensity, noise }
 }
 
-/** Distance between the laminae that stand out at a scale, path pixels, around each block of rows; Infinity where none does. */
+/** Distance between the laminae that stand out at a scale, path pixels, around each block of rows; Infinity where none does, NaN where all is quiet. */
 function spacingAt(scale: number, mean: Float64Array, noise: Float64Array): Float64Array {
   const block = Math.max(1, Math.floor(scale / 10))
   const perScale = scale / block
@@ -69,27 +72,31 @@ function spacingAt(scale: number, mean: Float64Array, noise: Float64Array): Floa
   const differences = gaussianSmooth(blockMeans(noise, block), perScale / 8)
   const half = Math.round((layersPerWindow * perScale) / 2)
   const trend = movingMean(signal, Math.round(1.5 * perScale))
-  const deviation = movingMean(
-    signal.map((value, k) => Math.abs(value - trend[k])),
-    half,
-  )
+  const distance = signal.map((value, k) => Math.abs(value - trend[k]))
+  const deviation = movingMean(distance, half)
   const noiseTrend = movingMean(differences, Math.round(1.5 * perScale))
   const disagreement = movingMean(
     differences.map((value, k) => Math.abs(value - noiseTrend[k])),
     half,
   )
-  // A stretch far quieter than most of the core, such as an event bed, has no laminae of its own.
-  const quiet = 0.3 * medianOfFinite(deviation)
   const marks = new Float64Array(signal.length)
   for (const column of [signal, signal.map((value) => -value)]) {
     const { index, prominence } = findPeaks(column)
     for (const [p, k] of index.entries()) {
-      const least = Math.max(leastStrength * deviation[k], leastStrength * quiet, leastOverNoise * disagreement[k])
-      if (prominence[p] >= least) marks[k] += 0.5
+      if (prominence[p] >= Math.max(leastStrength * deviation[k], leastOverNoise * disagreement[k])) marks[k] += 0.5
     }
   }
-  for (let k = 0; k < marks.length; k++) if (Number.isNaN(signal[k])) marks[k] = NaN
-  return movingMean(marks, half).map((density) => (density > 0 ? block / density : Infinity))
+  // A stretch far quieter than most of the core, such as an event bed, has no laminae of its own and no say.
+  const nearby = movingMean(distance, Math.round(perScale))
+  const quiet = quietShare * medianOfFinite(nearby)
+  for (let k = 0; k < marks.length; k++) if (!(nearby[k] >= quiet)) marks[k] = NaN
+  const heard = movingMean(
+    marks.map((mark) => (Number.isNaN(mark) ? 0 : 1)),
+    half,
+  )
+  return movingMean(marks, half).map((density, k) =>
+    heard[k] < leastHeard ? NaN : density > 0 ? block / density : Infinity,
+  )
 }
 
 function blockMeans(column: Float64Array, block: number): Float64Array {
