@@ -1,4 +1,5 @@
 import { checkSameLength } from '../check.ts'
+import { siteLabels } from './alignment.ts'
 import { csvText, decimals, numberCell, textCell } from './csv.ts'
 import type { Detrended } from './detrend.ts'
 import type { LayerRow } from './layerRows.ts'
@@ -49,14 +50,11 @@ export function profileTable(profile: Profile, detrended: Detrended, mmPerPx: nu
   return csvText(['distance_px', 'depth_mm', 'intensity', 'detrended'], rows())
 }
 
-/** How one counter saw one site. */
-export const siteLabels = ['absent', 'doubtful', 'certain'] as const
-
 /** Sites of aligned repeat counts, downcore; columns [sites]. */
 export interface SiteColumns {
   /** NaN where the section has no scale. */
   depthMm: ArrayLike<number>
-  /** One column a counter: index into siteLabels. */
+  /** One column a counter: index into siteLabels of alignment.ts. */
   labels: readonly { counter: string; label: ArrayLike<number> }[]
   /** Probability that the site is a year. */
   probability: ArrayLike<number>
