@@ -1,8 +1,6 @@
 import { mkdtempSync, rmSync } from 'node:fs'
 import { tmpdir } from 'node:os'
 import { join } from 'node:path'
-import { fileURLToPath } from 'node:url'
-import { createServer } from 'vite'
 import { projectToJson } from '../../src/document/parseProject.ts'
 import { sameJson } from '../../src/document/sameJson.ts'
 import type { WorkbenchState } from '../../src/document/state.ts'
@@ -11,8 +9,7 @@ import { startedState } from '../fixtures/project.ts'
 import { steadyEdit } from '../fixtures/steadyEdits.ts'
 import { killChromium, launchPersistentChromium } from './chromium.ts'
 import type { Report } from './savingPage.ts'
-
-const root = fileURLToPath(new URL('../..', import.meta.url))
+import { serveSource } from './serveSource.ts'
 
 export interface KillFigures {
   kills: number
@@ -57,15 +54,8 @@ async function session(folder: string, url: string, lifetime: number): Promise<R
 
 /** Kills a browser at random moments while its page edits without end, and compares what each next page finds. */
 export async function killAndReopen(kills: number, random: Random): Promise<KillFigures> {
-  const server = await createServer({
-    configFile: false,
-    root,
-    logLevel: 'error',
-    server: { port: 0, watch: null, hmr: false },
-    optimizeDeps: { noDiscovery: true },
-  })
-  await server.listen()
-  const url = `${server.resolvedUrls!.local[0]}test/browser/savingPage.html`
+  const server = await serveSource()
+  const url = `${server.url}test/browser/savingPage.html`
   const folder = mkdtempSync(join(tmpdir(), 'winterclay-kill-'))
   const stateAt = seriesOfStates()
   const figures: KillFigures = { kills: 0, saved: 0, losses: [], ahead: 0 }

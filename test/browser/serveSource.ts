@@ -1,0 +1,17 @@
+import { fileURLToPath } from 'node:url'
+import { createServer } from 'vite'
+
+const root = fileURLToPath(new URL('../..', import.meta.url))
+
+/** Serves the project's folder with its TypeScript as a browser reads it; `url` ends with a slash. */
+export async function serveSource(): Promise<{ url: string; close: () => Promise<void> }> {
+  const server = await createServer({
+    configFile: false,
+    root,
+    logLevel: 'error',
+    server: { port: 0, watch: null, hmr: false },
+    optimizeDeps: { noDiscovery: true },
+  })
+  await server.listen()
+  return { url: server.resolvedUrls!.local[0], close: () => server.close() }
+}
