@@ -1,5 +1,5 @@
 import { checkSameLength, Fault } from '../../worker/check.ts'
-import { indicesOfIds, markAt, minimalGap } from '../document/layerSet.ts'
+import { indicesOfIds, marks, minimalGap } from '../document/layerSet.ts'
 import type { LayerSet } from '../document/layerSet.ts'
 import { liftLayers, moveLayers } from '../document/layerSteps.ts'
 import type { Outcome } from '../document/outcome.ts'
@@ -8,6 +8,8 @@ import type { WorkbenchState } from '../document/state.ts'
 import type { Edit } from '../document/transaction.ts'
 import { checkOnPath, describePlace, makeEdit } from './edit.ts'
 import { checkOutsideSpans, rejectedWithin } from './roomForBoundaries.ts'
+
+const rejected = marks.indexOf('rejected')
 
 /**
  * Moves boundaries to new positions, path pixels, in the order of `ids`. Refused onto or past a neighbour that counts,
@@ -29,7 +31,7 @@ export function moveBoundaries(
     const rows = ids.map((_, i) => i).filter((i) => count.layers.position[indices[i]] !== positions[i])
     if (rows.length === 0) return []
     const moved = new Set(ids)
-    const counted = rows.filter((i) => markAt(count.layers, indices[i]) !== 'rejected')
+    const counted = rows.filter((i) => count.layers.mark[indices[i]] !== rejected)
     const givingWay = new Set(counted.flatMap((i) => rejectedWithin(count.layers, positions[i])))
     const lifted = [...givingWay].filter((id) => !moved.has(id))
     return [
@@ -50,7 +52,7 @@ function checkOrderKept(layers: LayerSet, indices: readonly number[], positions:
   indices.forEach((index, i) => (position[index] = positions[i]))
   let before = -Infinity
   for (let index = 0; index < position.length; index++) {
-    if (markAt(layers, index) === 'rejected') continue
+    if (layers.mark[index] === rejected) continue
     if (!(position[index] - before >= minimalGap)) {
       const onto = Math.abs(position[index] - before) < minimalGap
       const message = onto
