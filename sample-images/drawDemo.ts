@@ -30,7 +30,7 @@ const radiographFile = 'askelmere-1-radiograph.tif'
 const width = 9314
 const radiographFrom = 3000
 const radiographTo = 7000
-/** Through the 1650s: a boundary lies just beside it. */
+/** A boundary lies inside it. */
 const crack = { from: 7416, to: 7425 }
 
 /** A JFIF header that states 508 pixels an inch (0.05 mm a pixel); the encoder writes none of its own. */

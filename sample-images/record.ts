@@ -106,7 +106,7 @@ function drawCouplet(random: Random, year: number, top: number): Couplet {
   const spread = Math.exp(0.24 * random.normal())
   const silt = Math.min(46, Math.max(11.5, medianThickness(age) * spread))
   const faint = random.uniform() < 0.05
-  const doubled = !faint && silt > 19 && random.uniform() < 0.06
+  const doubled = !faint && silt > 19 && random.uniform() < 0.035
   const contrast = clarity(age) * Math.exp(0.16 * random.normal()) * (faint ? 0.34 : 1)
   const clay = silt * Math.min(0.42, Math.max(0.16, 0.27 + 0.06 * random.normal()))
   const laminae = summerLaminae(random, clay, silt, contrast, doubled)
