@@ -1,5 +1,5 @@
 import { Fault } from './check.ts'
-import { compareCounts } from './core/agreement.ts'
+import { compareCounts } from './core/counts.ts'
 import { buildChronology } from './core/chronology.ts'
 import { readCountTable } from './core/countTable.ts'
 import { paintSamples, stretchedDisplay } from './core/display.ts'
@@ -67,7 +67,7 @@ const handlers: { [K in JobKind]: Handler<K> } = {
     return { width, height, rgba: paintSamples(upright, display, open.info.bits) }
   },
   countTable: ({ text, name, columns }) => readCountTable(text, name, columns),
-  agreement: ({ counts }) => compareCounts(counts),
+  agreement: ({ counts, options }, circumstances) => drive(compareCounts(counts, options), circumstances),
   chronology: (request) => buildChronology(request),
   thickness: ({ thickness, window }) => ({
     summary: thicknessSummary(thickness),

@@ -1,6 +1,6 @@
-import type { Agreement } from './core/agreement.ts'
 import type { Candidates } from './core/candidates.ts'
 import type { Chronology, ChronologyRequest } from './core/chronology.ts'
+import type { Agreement, AgreementOptions } from './core/counts.ts'
 import type { CountColumns, CountTable } from './core/countTable.ts'
 import type { CounterMarks } from './core/counterMarks.ts'
 import type { Detrended } from './core/detrend.ts'
@@ -43,7 +43,7 @@ export interface Jobs {
   /** A count made elsewhere, read from CSV text with every bad row named. */
   countTable: { request: { text: string; name: string; columns: CountColumns }; reply: CountTable }
   /** Repeat counts of one stretch, aligned and compared. */
-  agreement: { request: { counts: CounterMarks[] }; reply: Agreement }
+  agreement: { request: { counts: CounterMarks[]; options?: Partial<AgreementOptions> }; reply: Agreement }
   /** Years and their error at every boundary of a count. */
   chronology: { request: ChronologyRequest; reply: Chronology }
   /** Figures and running mean of a thickness series. */

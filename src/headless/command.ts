@@ -3,10 +3,11 @@ import { argumentFault, parseCall } from './arguments.ts'
 import { count } from './count.ts'
 import { oneLine } from './oneLine.ts'
 import { profile } from './profile.ts'
+import { compare } from './compare.ts'
 import type { Verb } from './verb.ts'
 
 /** The verbs, in the order of the job. */
-const verbs: readonly Verb[] = [profile, count]
+const verbs: readonly Verb[] = [profile, count, compare]
 
 function help(): string {
   const width = Math.max(...verbs.map(({ name }) => name.length))

@@ -1,4 +1,4 @@
-import type { Agreement } from '../../worker/core/agreement.ts'
+import type { Agreement } from '../../worker/core/counts.ts'
 import type { Count } from '../document/project.ts'
 import { countedBoundaries } from './chronologyDesk.svelte.ts'
 import { wordsOf } from './scanDesk.svelte.ts'

@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest'
-import { compareCounts } from '../../worker/core/agreement.ts'
+import { compareCounts } from '../../worker/core/counts.ts'
+import { finish } from '../../worker/work.ts'
 import { readCountTable } from '../../worker/core/countTable.ts'
 
 const counter = (name: string, position: number[], doubtful: number[] = []) => ({
@@ -12,17 +13,19 @@ const years = (n: number, without: number[] = []) =>
   Array.from({ length: n }, (_, i) => 10 * (i + 1)).filter((_, i) => !without.includes(i))
 
 describe('repeat counts side by side', () => {
-  const agreement = compareCounts([
-    counter('A', years(20), [3]),
-    counter(
-      'B',
-      years(20, [7]).map((p) => p + 0.5),
-    ),
-    counter(
-      'C',
-      [...years(20), 155].sort((a, b) => a - b),
-    ),
-  ])
+  const agreement = finish(
+    compareCounts([
+      counter('A', years(20), [3]),
+      counter(
+        'B',
+        years(20, [7]).map((p) => p + 0.5),
+      ),
+      counter(
+        'C',
+        [...years(20), 155].sort((a, b) => a - b),
+      ),
+    ]),
+  )
 
   it('find each counter’s total, doubtful layers as one half', () => {
     expect(agreement.totals.map(({ halfLayer }) => halfLayer.years)).toEqual([19.5, 19, 21])

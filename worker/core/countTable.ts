@@ -1,6 +1,6 @@
-import { Fault } from '../check.ts'
-import { positionErrors } from './counterMarks.ts'
-import type { RowError } from './counterMarks.ts'
+import { describe, Fault } from '../check.ts'
+import { firstError, positionErrors } from './counterMarks.ts'
+import type { CounterMarks, RowError } from './counterMarks.ts'
 import { readCsv } from './csv.ts'
 
 /** One boundary of a count that came as a table. */
@@ -52,6 +52,9 @@ export function readCountTable(text: string, name: string, columns: CountColumns
     ...error,
     value: table.rows[error.row - 1][depthAt],
     row: table.lines[error.row - 1],
+    message: Number.isFinite(depth[error.row - 1])
+      ? error.message
+      : noNumber(columns.depth, table.rows[error.row - 1][depthAt]),
   }))
   const rows: CountTableRow[] = []
   table.rows.forEach((row, i) => {
@@ -62,7 +65,7 @@ export function readCountTable(text: string, name: string, columns: CountColumns
         row: table.lines[i],
         column: columns.mark ?? '',
         value: row[markAt],
-        message: `${columns.mark ?? ''} must be certain or doubtful`,
+        message: `${columns.mark ?? ''} must be certain or doubtful; it is ${describe(row[markAt])}`,
       })
     }
   })
@@ -72,6 +75,30 @@ export function readCountTable(text: string, name: string, columns: CountColumns
 /** A number as a table gives it; an empty cell and words are NaN, so that the row is refused and not read as 0. */
 function depthOf(cell: string): number {
   return cell.trim() === '' ? NaN : Number(cell)
+}
+
+function noNumber(column: string, cell: string): string {
+  return cell.trim() === '' ? `${column} is empty` : `${column} must be a finite number; it is ${describe(cell)}`
+}
+
+/**
+ * A table as a count to be compared, under the counter's name. A table with a bad row is refused in one line: the first bad
+ * row, by its line in the file, and how many more there are.
+ */
+export function marksOfTable({ rows, errors }: CountTable, file: string, counter: string): CounterMarks {
+  if (errors.length > 0) {
+    const byRow = [...new Map(errors.toReversed().map((error) => [error.row, error])).values()].toReversed()
+    throw new Fault('format', errors[0].column, errors[0].value, firstError(file, byRow))
+  }
+  if (rows.length === 0) {
+    throw new Fault('format', file, 0, `${file} has no rows below its header; a count needs at least one boundary`)
+  }
+  return {
+    name: counter,
+    position: Float64Array.from(rows, ({ depthMm }) => depthMm),
+    doubtful: Uint8Array.from(rows, ({ mark }) => (mark === 'doubtful' ? 1 : 0)),
+    range: null,
+  }
 }
 
 function columnIn(header: readonly string[], column: string, name: string): number {

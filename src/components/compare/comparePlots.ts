@@ -1,4 +1,4 @@
-import type { Agreement } from '../../../worker/core/agreement.ts'
+import type { Agreement } from '../../../worker/core/counts.ts'
 import { marks } from '../../document/layerSet.ts'
 import type { NamedCount } from '../../session/comparison.svelte.ts'
 import type { AgreementData, DifferencesData } from '../../view/plots/data.ts'
