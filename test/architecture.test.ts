@@ -66,6 +66,7 @@ const allowed: Record<string, string[]> = {
     'worker/units.ts',
     'worker/check.ts',
     'worker/work.ts (types)',
+    'worker/core/transect.ts',
     'worker/core/ (types)',
     'worker/reading/ (types)',
     'svelte',

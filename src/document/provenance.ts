@@ -98,6 +98,9 @@ function addedLayers(step: Step, count: string) {
   return 'layers' in step.record ? step.record.layers : null
 }
 
+/** Year-month-day hour:minute: the Swedish way of writing is that of ISO 8601. */
+const minutes = new Intl.DateTimeFormat('sv-SE', { dateStyle: 'short', timeStyle: 'short', timeZone: 'UTC' })
+
 /** One sentence for the person at the bench. */
 export function describeEvent(event: LayerEvent): string {
   const what =
@@ -106,7 +109,7 @@ export function describeEvent(event: LayerEvent): string {
       : event.act === 'moved'
         ? `Moved to ${(event.position ?? NaN).toFixed(1)} px`
         : `Marked ${event.mark ?? ''}`
-  const when = `${new Date(event.time).toISOString().slice(0, 16).replace('T', ' ')} UTC`
+  const when = `${minutes.format(event.time)} UTC`
   const evidence = event.evidence
     ? `from ${event.evidence.job} (${event.evidence.method}), input ${event.evidence.inputHash.slice(0, 12)}`
     : 'by own judgement'
