@@ -1,13 +1,26 @@
+import { chmodSync } from 'node:fs'
+import { join } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import { svelte } from '@sveltejs/vite-plugin-svelte'
+import type { Plugin } from 'vite'
 import { VitePWA } from 'vite-plugin-pwa'
 import { defineConfig } from 'vitest/config'
 
 const at = (path: string) => fileURLToPath(new URL(path, import.meta.url))
 
+/** npx runs the command itself, so the built file must be executable; bundlers write it without that bit. */
+const executableCommand: Plugin = {
+  name: 'executable-command',
+  writeBundle({ dir }, bundle) {
+    for (const file of Object.values(bundle)) {
+      if (dir && file.type === 'chunk' && file.isEntry) chmodSync(join(dir, file.fileName), 0o755)
+    }
+  },
+}
+
 /**
  * One configuration for the page, its worker, the headless command and the tests.
- * `vite build` makes the page in dist/page; `vite build --ssr src/headless/main.ts` the command in dist/headless.
+ * `vite build` makes the page in dist/page; `vite build --ssr headless/main.ts` the command in dist/headless.
  */
 export default defineConfig(({ isSsrBuild }) => ({
   root: at('./src'),
@@ -17,7 +30,7 @@ export default defineConfig(({ isSsrBuild }) => ({
     svelte({ configFile: false }),
     // The page works offline after its first visit: page, worker and the demo's photograph are kept.
     isSsrBuild
-      ? []
+      ? [executableCommand]
       : VitePWA({
           registerType: 'autoUpdate',
           injectRegister: 'script-defer',
