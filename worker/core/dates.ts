@@ -32,6 +32,8 @@ export interface CoreDate {
   shape?: 'normal' | 'uniform'
   /** Without it: normal for years, Student-t (Christen & Perez 2009) for radiocarbon. */
   model?: ErrorModel
+  /** Name of its calibration curve; without it the one chosen for the core. */
+  curve?: string
 }
 
 /** The likelihood of a date over the years of its level; columns [years], entry i belongs to x = from + i (year = -x). */

@@ -36,8 +36,8 @@ export interface BiasPosterior {
   bayesFactor: number
 }
 
-/** The chronology of a core. */
-export interface Chronology {
+/** The chronology of a core tied to the calendar. */
+export interface DatedChronology {
   /** Of each row of the counted layers, [rows]. */
   ages: LevelAges
   /** In the order in which the dates were given. */
@@ -51,7 +51,7 @@ export function* calendarAges(
   chain: CountChain,
   dates: readonly DateLikelihood[],
   options: LatticeOptions = latticeDefaults,
-): Work<Chronology> {
+): Work<DatedChronology> {
   const problem = latticeProblem(chain, dates, options)
   const nodes = yield* biasNodes(problem)
   const columns = new AgeColumns(chain.levels)

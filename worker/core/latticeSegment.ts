@@ -4,7 +4,7 @@ import type { ForwardPass } from './latticeForward.ts'
 import type { LatticeProblem } from './latticeProblem.ts'
 import { emptyRow, sumOf } from './rowArena.ts'
 import type { Row, RowArena } from './rowArena.ts'
-import type { StepLaws } from './stepLaws.ts'
+import type { StepLaws, WholeYears } from './stepLaws.ts'
 
 /** Levels of segment k: from, and the level after its last. */
 export function segmentLevels({ chain, first }: LatticeProblem, k: number): { from: number; to: number } {
@@ -56,19 +56,23 @@ export function afterDates(
   return { row: met, logSum: Math.log(sum) }
 }
 
+/** Fills `to` with the distribution of x after a number of years with any law: each cell gathers what the law brings to it. */
+export function gather(from: Row, to: Row, { first, probability }: WholeYears): void {
+  const offset = to.low - first - from.low
+  for (let k = 0; k < to.width; k++) {
+    const least = Math.max(0, k + offset - from.width + 1)
+    const most = Math.min(probability.length - 1, k + offset)
+    let sum = 0
+    for (let j = least; j <= most; j++) sum += probability[j] * from.values[from.at + k + offset - j]
+    to.values[to.at + k] = sum
+  }
+}
+
 /** Fills `to` (level i) with the distribution of x after step i, from that of level i - 1. */
 function stepDown(from: Row, to: Row, laws: StepLaws, i: number): void {
   const gap = laws.gaps.get(i)
   if (gap) {
-    // Each cell of the new row gathers what the law brings to it.
-    const offset = to.low - gap.first - from.low
-    for (let k = 0; k < to.width; k++) {
-      const least = Math.max(0, k + offset - from.width + 1)
-      const most = Math.min(gap.probability.length - 1, k + offset)
-      let sum = 0
-      for (let j = least; j <= most; j++) sum += gap.probability[j] * from.values[from.at + k + offset - j]
-      to.values[to.at + k] = sum
-    }
+    gather(from, to, gap)
     return
   }
   const [q0, q1, q2] = [laws.tap[3 * i], laws.tap[3 * i + 1], laws.tap[3 * i + 2]]
