@@ -1,7 +1,8 @@
-import { checkAtLeast, checkFinite, checkSameLength, Fault } from '../check.ts'
+import { checkAtLeast, checkFinite, checkSameLength, checkWithin, Fault } from '../check.ts'
 import { repeatCountError } from './countingError.ts'
-import type { Span } from './spans.ts'
-import { renewalYears } from './unreadableYears.ts'
+import { gapYears, thicknesses, type DatedSpan } from './gapYears.ts'
+
+export type { DatedSpan } from './gapYears.ts'
 
 /** One count's boundaries that count, sorted downcore; both columns [boundaries]. */
 export interface CountedBoundaries {
@@ -11,15 +12,28 @@ export interface CountedBoundaries {
   doubtful: Uint8Array
 }
 
-export const errorConventions = ['half-layer', 'repeat-counts'] as const
+export const errorConventions = ['half-layer', 'half-layer-independent', 'repeat-counts', 'sites'] as const
 export type ErrorConvention = (typeof errorConventions)[number]
+
+/** Years downcore that come with an error of their own: from the counter model, or from a ladder; columns [sites], sorted downcore. */
+export interface SiteYears {
+  /** Path pixels. */
+  position: Float64Array
+  /** Expected years from the first site down to and with each site, and their SD. */
+  yearsTo: Float64Array
+  sdTo: Float64Array
+}
 
 export interface ChronologyRequest {
   /** The count the chronology is built on. */
   count: CountedBoundaries
   /** All counts of this transect, the one above among them; two or more are needed for `repeat-counts`. */
   repeats: CountedBoundaries[]
-  spans: Span[]
+  /** Needed for the convention `sites`: see SiteYears. */
+  sites?: SiteYears | null
+  /** SD of the bias that all counters share, as a fraction of the years; default 0. Told as a term of its own. */
+  systematicSd?: number
+  spans: DatedSpan[]
   /** mm per path pixel; null: depth and thickness stay unknown (NaN). */
   mmPerPx: number | null
   /** Depth of path distance 0 below the sediment surface, mm. */
@@ -45,12 +59,16 @@ export interface Chronology {
   /** Astronomical year; null for a floating chronology. */
   calendarYear: Float64Array | null
   convention: ErrorConvention
+  /** Standard deviation from the bias that all counters share, years, [boundaries]: in none of the errors above. */
+  systematic: Float64Array
   /** Years put in for unreadable spans, with their SD. */
   unreadable: { years: number; sd: number }
+  /** Years put in for hiatuses of known range, with their SD. */
+  hiatus: { years: number; sd: number }
+  /** First boundary below a hiatus of unknown length: from there on the years are the fewest there can be. Null: none. */
+  openFrom: number | null
 }
 
-/** As many layers on either side of an unreadable stretch speak for its thickness (our own figure). */
-const neighbours = 25
 /** Two-sided 95 % point of the normal distribution. */
 const normal95 = 1.959963984540054
 
@@ -61,28 +79,31 @@ const normal95 = 1.959963984540054
  * sigma (Rasmussen et al. 2006, JGR 111, D06102; Andersen et al. 2006, QSR 25, 3246).
  * `repeat-counts`: the mean of the counts' cumulative totals at each depth, with their SD (n - 1) and the 95 % half-width of
  * the mean, t SD / sqrt(n) (Student). Neither sees what all counters miss alike.
- * Unreadable stretches hold the years that the layers around them suggest (renewal theorem; Cox 1962), independent of the
- * counting and added in quadrature; event beds hold none; a hiatus is of unknown length and adds none.
+ * `half-layer-independent`: every doubtful layer an independent fair coin, sqrt(n / 4); not the published rule.
+ * `sites`: expected years and SD of aligned sites or of a ladder, at the site nearest to each boundary.
+ * Unreadable stretches hold the years that the layers around them suggest (see gapYears.ts), independent of the counting and
+ * added in quadrature; event beds hold none; a hiatus holds the years of its range, each as likely as another, or adds none
+ * and leaves the count below open.
  */
 export function buildChronology(request: ChronologyRequest): Chronology {
   checkRequest(request)
   const { count, spans, mmPerPx, depthTop, convention, anchorYear } = request
-  const gaps = unreadableGaps(count.position, spans)
-  const counted = convention === 'half-layer' ? halfLayers(count) : meanOfCounts(request)
+  const gaps = gapYears(count.position, spans)
+  const counted = countedYears(request)
   const n = count.position.length
   const varveYear = new Float64Array(n)
   const sigma = new Float64Array(n)
   const half95 = new Float64Array(n)
-  let years = 0
-  let variance = 0
+  const added = { unreadable: { years: 0, variance: 0 }, hiatus: { years: 0, variance: 0 } }
   for (let i = 0; i < n; i++) {
-    varveYear[i] = counted.years[i] + years
+    const variance = added.unreadable.variance + added.hiatus.variance
+    varveYear[i] = counted.years[i] + added.unreadable.years + added.hiatus.years
     sigma[i] = Math.hypot(counted.sigma[i], Math.sqrt(variance))
     half95[i] = Math.hypot(counted.half95[i], normal95 * Math.sqrt(variance))
-    const gap = gaps.get(i)
-    if (!gap) continue
-    years += gap.mean
-    variance += gap.variance
+    for (const kind of ['unreadable', 'hiatus'] as const) {
+      added[kind].years += gaps[kind].get(i)?.mean ?? 0
+      added[kind].variance += gaps[kind].get(i)?.variance ?? 0
+    }
   }
   const mm = mmPerPx ?? NaN
   return {
@@ -94,11 +115,28 @@ export function buildChronology(request: ChronologyRequest): Chronology {
     half95,
     calendarYear: anchorYear === null ? null : varveYear.map((year) => anchorYear - (year - 1)),
     convention,
-    unreadable: { years, sd: Math.sqrt(variance) },
+    systematic: varveYear.map((year) => (request.systematicSd ?? 0) * year),
+    unreadable: { years: added.unreadable.years, sd: Math.sqrt(added.unreadable.variance) },
+    hiatus: { years: added.hiatus.years, sd: Math.sqrt(added.hiatus.variance) },
+    openFrom: gaps.openFrom,
   }
 }
 
-function checkRequest({ count, repeats, convention, mmPerPx, depthTop, anchorYear }: ChronologyRequest): void {
+function countedYears(request: ChronologyRequest): CountedYears {
+  switch (request.convention) {
+    case 'half-layer':
+      return halfLayers(request.count)
+    case 'half-layer-independent':
+      return independentHalves(request.count)
+    case 'repeat-counts':
+      return meanOfCounts(request)
+    case 'sites':
+      return yearsOfSites(request.count.position, request.sites ?? null)
+  }
+}
+
+function checkRequest(request: ChronologyRequest): void {
+  const { count, repeats, convention, mmPerPx, depthTop, anchorYear } = request
   for (const { position, doubtful } of [count, ...repeats]) {
     checkSameLength('doubtful', doubtful, position.length)
     for (let i = 0; i < position.length; i++) {
@@ -123,6 +161,7 @@ function checkRequest({ count, repeats, convention, mmPerPx, depthTop, anchorYea
   }
   if (mmPerPx !== null) checkAtLeast('mm per pixel', mmPerPx, Number.MIN_VALUE)
   checkFinite('depth of the top', depthTop)
+  checkWithin('systematic SD', request.systematicSd ?? 0, 0, 1)
   if (anchorYear !== null) checkFinite('anchor year', anchorYear)
 }
 
@@ -144,6 +183,45 @@ function halfLayers({ position, doubtful }: CountedBoundaries): CountedYears {
     half95[i] = inDoubt / 2
   }
   return { years, sigma: half95.map((maximum) => maximum / 2), half95 }
+}
+
+/** As halfLayers, but the doubtful layers independent of each other: E = sum p, Var = sum p (1 - p) with p = 1/2. */
+function independentHalves(count: CountedBoundaries): CountedYears {
+  const { years, half95: mce } = halfLayers(count)
+  const sigma = mce.map((maximum) => Math.sqrt(maximum / 2))
+  return { years, sigma, half95: sigma.map((sd) => normal95 * sd) }
+}
+
+/** Years of layers that are real with the given probabilities, independently: E = sum p, Var = sum p (1 - p). */
+export function independentLayers(position: Float64Array, probability: Float64Array): SiteYears {
+  checkSameLength('probability', probability, position.length)
+  let years = 0
+  let variance = 0
+  const yearsTo = new Float64Array(position.length)
+  const sdTo = new Float64Array(position.length)
+  for (let i = 0; i < position.length; i++) {
+    const p = checkWithin(`probability of layer ${i + 1}`, probability[i], 0, 1)
+    yearsTo[i] = years += p
+    variance += p * (1 - p)
+    sdTo[i] = Math.sqrt(variance)
+  }
+  return { position, yearsTo, sdTo }
+}
+
+function yearsOfSites(boundaries: Float64Array, sites: SiteYears | null): CountedYears {
+  if (!sites || sites.position.length === 0) {
+    throw new Fault('argument', 'sites', null, 'an error from aligned sites needs the sites: compare the counts first')
+  }
+  const { position, yearsTo, sdTo } = sites
+  checkSameLength('years of the sites', yearsTo, position.length)
+  checkSameLength('SD of the sites', sdTo, position.length)
+  let site = 0
+  const nearest = Array.from(boundaries, (at) => {
+    while (site + 1 < position.length && Math.abs(position[site + 1] - at) <= Math.abs(position[site] - at)) site++
+    return site
+  })
+  const sigma = Float64Array.from(nearest, (one) => sdTo[one])
+  return { years: Float64Array.from(nearest, (one) => yearsTo[one]), sigma, half95: sigma.map((sd) => normal95 * sd) }
 }
 
 function meanOfCounts({ count, repeats }: ChronologyRequest): CountedYears {
@@ -175,64 +253,4 @@ export function cumulativeYears({ position, doubtful }: CountedBoundaries, depth
     result[i] = above + (k < position.length && k > 0 ? share * (doubtful[k] ? 0.5 : 1) : 0)
   }
   return result
-}
-
-/** Extra years after boundary i where an unreadable span lies between it and the next; the year it would be anyway is not counted twice. */
-function unreadableGaps(
-  position: Float64Array,
-  spans: readonly Span[],
-): Map<number, { mean: number; variance: number }> {
-  const unreadable = spans.filter(({ kind }) => kind === 'unreadable')
-  const gaps = new Map<number, { mean: number; variance: number }>()
-  if (unreadable.length === 0) return gaps
-  const thickness = thicknesses(position, spans)
-  for (let i = 0; i + 1 < position.length; i++) {
-    if (!unreadable.some(({ from, to }) => from < position[i + 1] && to > position[i])) continue
-    const near = nearestThicknesses(thickness, i)
-    if (near.length < 2) {
-      throw new Fault(
-        'argument',
-        'spans',
-        near.length,
-        `the unreadable span below boundary ${i + 1} has ${near.length} readable layers around it; at least 2 are needed to say how many years it holds`,
-      )
-    }
-    const mean = near.reduce((sum, one) => sum + one, 0) / near.length
-    const sd = Math.sqrt(near.reduce((sum, one) => sum + (one - mean) ** 2, 0) / (near.length - 1))
-    const room = position[i + 1] - position[i] - eventLength(spans, position[i], position[i + 1])
-    const inside = renewalYears(room, mean, sd, near.length)
-    gaps.set(i, { mean: Math.max(0, inside.mean - 1), variance: inside.variance })
-  }
-  return gaps
-}
-
-/** Thickness below each boundary without event beds, path pixels; NaN for the last and where it cannot be read. */
-function thicknesses(position: Float64Array, spans: readonly Span[]): Float64Array {
-  const breaks = spans.filter(({ kind }) => kind !== 'event')
-  return position.map((from, i) => {
-    const to = position[i + 1] as number | undefined
-    if (to === undefined || breaks.some((span) => span.from < to && span.to > from)) return NaN
-    return to - from - eventLength(spans, from, to)
-  })
-}
-
-function eventLength(spans: readonly Span[], from: number, to: number): number {
-  let sum = 0
-  for (const span of spans) {
-    if (span.kind === 'event') sum += Math.max(0, Math.min(to, span.to) - Math.max(from, span.from))
-  }
-  return sum
-}
-
-function nearestThicknesses(thickness: Float64Array, row: number): number[] {
-  const found: number[] = []
-  for (const direction of [-1, 1]) {
-    let taken = 0
-    for (let i = row + direction; i >= 0 && i < thickness.length && taken < neighbours; i += direction) {
-      if (!(thickness[i] > 0)) continue
-      found.push(thickness[i])
-      taken++
-    }
-  }
-  return found
 }
