@@ -6,7 +6,7 @@ import type { Outcome } from '../document/outcome.ts'
 import { needRecord } from '../document/project.ts'
 import type { WorkbenchState } from '../document/state.ts'
 import type { Edit } from '../document/transaction.ts'
-import { checkOnPath, describePlace, makeEdit } from './edit.ts'
+import { checkOnPath, describePlace, Draft, makeEdit } from './edit.ts'
 import { checkOutsideSpans, rejectedWithin } from './roomForBoundaries.ts'
 
 const rejected = marks.indexOf('rejected')
@@ -34,15 +34,18 @@ export function moveBoundaries(
     const counted = rows.filter((i) => count.layers.mark[indices[i]] !== rejected)
     const givingWay = new Set(counted.flatMap((i) => rejectedWithin(count.layers, positions[i])))
     const lifted = [...givingWay].filter((id) => !moved.has(id))
-    return [
-      lifted.length > 0 ? liftLayers(count, lifted) : null,
+    // A draft, because a proposal that is moved may itself land on something; its Fault is the answer.
+    const draft = new Draft(state.project)
+    draft.add(lifted.length > 0 ? liftLayers(count, lifted) : null)
+    draft.add(
       moveLayers(
         count,
         rows.map((i) => ids[i]),
         rows.map((i) => positions[i]),
         state.version + 1,
       ),
-    ]
+    )
+    return draft.steps
   })
 }
 

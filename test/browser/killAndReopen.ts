@@ -35,8 +35,12 @@ async function session(folder: string, url: string, lifetime: number): Promise<R
   const context = await launchPersistentChromium(folder)
   const reports: Report[] = []
   const page = await context.newPage()
+  const errors: Error[] = []
   const loaded = new Promise<void>((resolve, reject) => {
-    page.on('pageerror', reject)
+    page.on('pageerror', (error) => {
+      errors.push(error)
+      reject(error)
+    })
     page.on('console', (message) => {
       if (!message.text().startsWith('{')) return
       reports.push(JSON.parse(message.text()) as Report)
@@ -49,6 +53,8 @@ async function session(folder: string, url: string, lifetime: number): Promise<R
   await new Promise((resolve) => setTimeout(resolve, lifetime))
   killChromium(folder)
   await gone
+  // A page that gave up editing would make every later kill an idle one.
+  if (errors.length > 0) throw errors[0]
   return reports
 }
 

@@ -99,6 +99,16 @@ describe('moveBoundaries', () => {
     expect(layersOf(onto)).toMatchObject({ id: [1, 3], position: [20, 30] })
   })
 
+  it('refuses to move a rejected proposal onto any other boundary', () => {
+    const state = withRejected()
+    expect(refusal(moveBoundaries(state, { count, ids: [2], positions: [30.1] }))).toBe(
+      'a boundary at 30.10 px would lie on the one at 30.00 px; ' +
+        'boundaries must be 0.25 px apart and in order: move or remove that one first',
+    )
+    const both = after(state, markBoundaries(state, { count, ids: [1], mark: 'rejected' }))
+    expect(moveBoundaries(both, { count, ids: [2], positions: [10] })).toBeInstanceOf(Fault)
+  })
+
   it('has nothing to do when all stay where they are', () => {
     const state = countedState([10, 20])
     expect(need(moveBoundaries(state, { count, ids: [1, 2], positions: [10, 20] })).steps).toEqual([])
