@@ -73,7 +73,10 @@ export function refuseBeyond(date: C14Measurement, value: number, sigma: number,
   const [mu, curveSigma] = date.quantity === 'age' ? [curve.age, curve.ageSigma] : [curve.f14c, curve.f14cSigma]
   let nearest = Infinity
   for (let i = 0; i < mu.length; i++) {
-    nearest = Math.min(nearest, Math.abs(value - mu[i]) / Math.hypot(sigma, curveSigma[i]))
+    // Between two years the curve passes every value between theirs.
+    const next = Math.min(i + 1, mu.length - 1)
+    const outside = Math.max(0, Math.min(mu[i], mu[next]) - value, value - Math.max(mu[i], mu[next]))
+    nearest = Math.min(nearest, outside / Math.hypot(sigma, curveSigma[i]))
   }
   if (nearest <= furthest) return
   const names = curve.sources.map(({ name }) => name).join(' with ')

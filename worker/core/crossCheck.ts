@@ -11,8 +11,8 @@ import type { StrayStretch } from './strayStretch.ts'
 
 export interface CrossCheck {
   /**
-   * Squares of the leave-one-out residuals of all dates, against chi-square. The residuals are not quite independent, so the
-   * probability is a guide. Null where no date can be compared with others.
+   * Squares of the leave-one-out residuals of all dates but the outliers, against chi-square. The residuals are not quite
+   * independent, so the probability is a guide. Null where no date can be compared with others.
    */
   fit: { chiSquare: number; degrees: number; probability: number } | null
   /** Dates that are more likely outliers than not. */
@@ -31,7 +31,9 @@ export function crossCheck(
   { checks, bias }: DatedChronology,
   biasSd: number,
 ): CrossCheck {
-  const compared = checks.filter(({ residual }) => Number.isFinite(residual))
+  const compared = checks.filter(
+    ({ residual, outlierProbability }) => Number.isFinite(residual) && outlierProbability <= 0.5,
+  )
   const chiSquare = compared.reduce((sum, { residual }) => sum + residual * residual, 0)
   const degrees = compared.length
   const outliers = checks.filter(({ outlierProbability }) => outlierProbability > 0.5).map(({ id }) => id)

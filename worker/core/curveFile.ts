@@ -160,7 +160,8 @@ function curveOf(columns: Columns, rows: Row[], { name, sha256 }: CurveFileName,
 
 /**
  * Means over calendar years, as whole cal BP: decimal years 1963.00 to 1963.99 are the year 1963, which is -13 cal BP.
- * The errors of one year's values are taken as fully shared, so the mean keeps their mean.
+ * The errors of one year's values are taken as fully shared, so the mean keeps their mean; as the season in which the dated
+ * matter grew is not known, the scatter of the year's values comes in beside it.
  */
 function yearMeans(rows: Row[]): Row[] {
   const byYear = new Map<number, Row[]>()
@@ -173,12 +174,13 @@ function yearMeans(rows: Row[]): Row[] {
   for (const [year, values] of byYear) {
     if (several && values.length < leastPerYear) continue
     const mean = (pick: (row: Row) => number) => values.reduce((sum, row) => sum + pick(row), 0) / values.length
-    means.push({
-      line: values[0].line,
-      time: calBpOf(year),
-      value: mean((row) => row.value),
-      sigma: mean((row) => row.sigma),
-    })
+    const value = mean((row) => row.value)
+    const scatter = Math.sqrt(mean((row) => (row.value - value) ** 2))
+    const sigma = Math.hypot(
+      mean((row) => row.sigma),
+      scatter,
+    )
+    means.push({ line: values[0].line, time: calBpOf(year), value, sigma })
   }
   return means
 }

@@ -39,7 +39,7 @@ interface Placement {
 /**
  * Looks for a hard-water effect: radiocarbon ages all too old by about the same amount, while their wiggles still follow the
  * curve. The count is laid down rigidly (its chance error widens each date's), at the fixed year of its top or wherever it
- * may float; known years hold it. For each offset the likelihoods of all placements are summed.
+ * may float; known years hold it, and single outliers are left out. For each offset the likelihoods of all placements are summed.
  */
 export function hardWater(
   counted: StepLaws,
@@ -47,7 +47,7 @@ export function hardWater(
   checks: readonly DateCheck[],
   biasSd: number,
 ): HardWater | null {
-  const carbon = dates.filter(({ kind }) => kind === 'c14')
+  const carbon = dates.filter(({ kind }, d) => kind === 'c14' && !(checks[d].outlierProbability > 0.5))
   if (carbon.length < least.dates) return null
   const placements = placementsOf(counted, dates, checks, biasSd)
   const offsets: number[] = []

@@ -37,8 +37,8 @@ interface Dated {
 const leastProbability = 0.05
 /** Years of a calibrated date further from the leave-one-out age than this do not speak for the level's year. */
 const window = { sds: 8, years: 400 }
-/** Of a floating count, the year of the top is free. */
-const freeVariance = 1e8
+/** The year of the top is free: an anchor is one more dated level, with next to no error. */
+const freeVariance = 1e7
 
 /**
  * For every pair of neighbouring dated levels: the generalised least-squares estimate of a step between them in
@@ -56,7 +56,10 @@ export function strayStretches(
   const stretches: StrayStretch[] = []
   if (dated.length < 2) return []
   const covariance = covarianceOf(counted, dated, biasSd)
-  const rest = Float64Array.from(dated, ({ x, level }) => x - counted.mean[level])
+  const rest = Float64Array.from(
+    dated,
+    ({ x, level }) => x - dated[0].x - counted.mean[level] + counted.mean[dated[0].level],
+  )
   for (let g = 0; g + 1 < dated.length; g++) {
     const [above, below] = [dated[g], dated[g + 1]]
     const years = counted.mean[below.level] - counted.mean[above.level]
@@ -121,14 +124,13 @@ function moments(low: number, probability: Float64Array, take: (x: number) => bo
 function covarianceOf({ mean, variance }: StepLaws, dated: readonly Dated[], biasSd: number): Float64Array {
   const n = dated.length
   const matrix = new Float64Array(n * n)
-  const free = dated.some(({ fixed }) => fixed) ? 0 : freeVariance
   const [origin, spread] = [mean[dated[0].level], variance[dated[0].level]]
   for (let i = 0; i < n; i++) {
     for (let j = 0; j < n; j++) {
       const upper = Math.min(dated[i].level, dated[j].level)
       const bias = biasSd * biasSd * (mean[dated[i].level] - origin) * (mean[dated[j].level] - origin)
       const own = i === j ? dated[i].sd ** 2 : 0
-      matrix[i * n + j] = own + (variance[upper] - spread) + bias + free
+      matrix[i * n + j] = own + (variance[upper] - spread) + bias + freeVariance
     }
   }
   return matrix
