@@ -1,5 +1,6 @@
 import type { Session, StepId } from '../session/session.svelte.ts'
 import { steps } from '../session/session.svelte.ts'
+import { keySwitch } from './keySwitch.svelte.ts'
 import type { CoreState } from './core/coreState.svelte.ts'
 import { toAxis, visibleRange } from '../view/viewport.ts'
 
@@ -18,7 +19,7 @@ export interface Key {
   /** How the key is written in the list; default: the key. */
   written?: string
   does: string
-  group: 'Move' | 'Judge' | 'Edit' | 'Spans' | 'View' | 'Page'
+  group: 'Move' | 'Judge' | 'Edit' | 'Spans' | 'Compare' | 'View' | 'Page'
   /** Steps in which it works; default: all. */
   steps?: readonly StepId[]
   act: (around: Act) => void
@@ -26,6 +27,7 @@ export interface Key {
 
 const counting: readonly StepId[] = ['count', 'compare', 'date', 'rates', 'report']
 const bench: readonly StepId[] = ['count']
+const comparing: readonly StepId[] = ['compare']
 /** Nudges in path pixels. */
 const fine = 0.25
 const coarse = 2
@@ -98,6 +100,20 @@ export const keys: readonly Key[] = [
     steps: bench,
     act: ({ session }) => session.counting.toNextDoubtful(-1),
   },
+  {
+    key: 'g',
+    does: 'first place not checked yet',
+    group: 'Move',
+    steps: bench,
+    act: ({ session }) => session.counting.toNextUnchecked(),
+  },
+  {
+    key: 'v',
+    does: 'least certain place first, then the next',
+    group: 'Move',
+    steps: bench,
+    act: ({ session }) => session.counting.toMostInformative(),
+  },
 
   {
     key: 'Enter',
@@ -129,6 +145,13 @@ export const keys: readonly Key[] = [
     steps: bench,
     act: confirmView,
   },
+  {
+    key: '.',
+    does: 'the same again, here',
+    group: 'Judge',
+    steps: bench,
+    act: ({ session }) => session.counting.repeat(),
+  },
 
   {
     key: 'b',
@@ -136,6 +159,27 @@ export const keys: readonly Key[] = [
     group: 'Edit',
     steps: bench,
     act: placeBoundary,
+  },
+  {
+    key: 's',
+    does: 'split the layer below into two years',
+    group: 'Edit',
+    steps: bench,
+    act: ({ session }) => session.counting.split(),
+  },
+  {
+    key: 'j',
+    does: 'join the layers on either side into one year',
+    group: 'Edit',
+    steps: bench,
+    act: ({ session }) => session.counting.join(),
+  },
+  {
+    key: 'm',
+    does: 'memo: write a note here',
+    group: 'Edit',
+    steps: bench,
+    act: ({ session }) => (session.counting.writing = session.counting.cursor !== null),
   },
   {
     key: 'Delete',
@@ -223,6 +267,44 @@ export const keys: readonly Key[] = [
   },
   { key: 'Escape', does: 'leave selection or span', group: 'Spans', act: ({ session, core }) => leave(session, core) },
 
+  {
+    key: 'n',
+    does: 'next difference',
+    group: 'Compare',
+    steps: comparing,
+    act: ({ session }) => session.settling.toNext(1),
+  },
+  {
+    key: 'n',
+    shift: true,
+    written: 'Shift N',
+    does: 'previous difference',
+    group: 'Compare',
+    steps: comparing,
+    act: ({ session }) => session.settling.toNext(-1),
+  },
+  {
+    key: 'y',
+    does: 'settle it: a year',
+    group: 'Compare',
+    steps: comparing,
+    act: ({ session }) => session.settling.settle('certain'),
+  },
+  {
+    key: 'd',
+    does: 'settle it: doubtful',
+    group: 'Compare',
+    steps: comparing,
+    act: ({ session }) => session.settling.settle('doubtful'),
+  },
+  {
+    key: 'x',
+    does: 'settle it: no year',
+    group: 'Compare',
+    steps: comparing,
+    act: ({ session }) => session.settling.settle('rejected'),
+  },
+
   { key: '+', does: 'closer', group: 'View', act: ({ core }) => core.zoom(1.5, focus(core)) },
   { key: '=', written: '=', does: 'closer', group: 'View', act: ({ core }) => core.zoom(1.5, focus(core)) },
   { key: '-', written: '−', does: 'farther', group: 'View', act: ({ core }) => core.zoom(1 / 1.5, focus(core)) },
@@ -277,6 +359,8 @@ export function pressedKey(event: KeyboardEvent, session: Session, core: CoreSta
   // On buttons and check boxes the Enter key and the space bar belong to the control itself.
   if (name === 'Enter' && event.target instanceof HTMLElement && event.target.matches('button, a, summary, input'))
     return false
+  if (name.length === 1 && !keySwitch.letters && !event.ctrlKey && !event.metaKey && !event.altKey && !onBench(event))
+    return false
   const key = keys.find(
     (one) =>
       one.key === name &&
@@ -287,6 +371,10 @@ export function pressedKey(event: KeyboardEvent, session: Session, core: CoreSta
   )
   key?.act({ session, core })
   return key !== undefined
+}
+
+function onBench({ target }: KeyboardEvent): boolean {
+  return target instanceof Element && target.closest('[data-bench]') !== null
 }
 
 /** Zooming by key keeps what is looked at: the pointer's place while it is over the core, else the middle. */

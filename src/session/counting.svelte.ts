@@ -1,6 +1,8 @@
 import { Fault } from '../../worker/check.ts'
+import { pathPixels } from '../../worker/units.ts'
 import type { Span } from '../../worker/core/ladder.ts'
 import { acceptCandidates } from '../commands/acceptCandidates.ts'
+import { joinLayers } from '../commands/joinLayers.ts'
 import { markBoundaries } from '../commands/markBoundaries.ts'
 import { markSpan } from '../commands/markSpan.ts'
 import { moveBoundaries } from '../commands/moveBoundaries.ts'
@@ -8,18 +10,22 @@ import { placeBoundary } from '../commands/placeBoundary.ts'
 import { rejectCandidates } from '../commands/rejectCandidates.ts'
 import { removeBoundaries } from '../commands/removeBoundaries.ts'
 import { removeSpan } from '../commands/removeSpan.ts'
+import { addNote } from '../commands/reviseNote.ts'
 import { setCheckedTo } from '../commands/setCheckedTo.ts'
+import { splitLayer } from '../commands/splitLayer.ts'
 import { emptyLayers, marks, range } from '../document/layerSet.ts'
 import type { LayerSet, Mark } from '../document/layerSet.ts'
 import type { Outcome } from '../document/outcome.ts'
 import type { Count, SectionSpan } from '../document/project.ts'
 import type { Cause, Edit } from '../document/transaction.ts'
 import type { Detection } from './detection.svelte.ts'
+import { joined } from './joinedEdits.ts'
 import { nextStop, noProposals, openProposals, stopAt } from './proposals.ts'
 import type { Proposals, Stop } from './proposals.ts'
+import { Review } from './review.svelte.ts'
+import { anyStop, layerBelow, splitPlace, standsOn } from './splitPlace.ts'
 import type { Workbench } from './workbench.svelte.ts'
 
-const rejected = marks.indexOf('rejected')
 const doubtful = marks.indexOf('doubtful')
 /** A stop within this distance of the cursor is the one being judged, path pixels. */
 const cursorReach = 0.5
@@ -38,11 +44,16 @@ export class Counting {
   #subject: () => Subject
   /** The cursor was moved off a proposal by hand: what is confirmed is the new place. */
   #nudged = false
+  /** The last judgement, split, join or nudge, to be done again where the cursor stands then. */
+  #last: (() => void) | null = null
+  readonly review: Review
   cursor = $state<number | null>(null)
   /** Other end of the selected stretch; null: one place only. */
   anchor = $state<number | null>(null)
   /** First end of a span being marked. */
   pendingSpan = $state.raw<{ kind: Span['kind']; from: number } | null>(null)
+  /** A note is being written at the cursor. */
+  writing = $state(false)
   /** Proposals are hidden while a count is made blind of the machine too. */
   proposalsHidden = $state(false)
 
@@ -50,6 +61,11 @@ export class Counting {
     this.#workbench = workbench
     this.#detection = detection
     this.#subject = subject
+    this.review = new Review(() => ({
+      ladder: this.proposalsHidden ? null : (this.#detection.found?.ladder ?? null),
+      layers: this.layers,
+      proposals: this.proposals,
+    }))
   }
 
   count = $derived.by(() => this.#subject().count)
@@ -84,7 +100,8 @@ export class Counting {
 
   /** To the next (+1) or previous (-1) boundary or proposal. */
   step(direction: 1 | -1, extend = false): boolean {
-    return this.#go(direction, extend, { marks: (mark) => mark !== rejected, proposals: true })
+    this.review.on = false
+    return this.#go(direction, extend, anyStop)
   }
 
   /** To the next open proposal; true when there was one. */
@@ -94,6 +111,22 @@ export class Counting {
 
   toNextDoubtful(direction: 1 | -1 = 1): boolean {
     return this.#go(direction, false, { marks: (mark) => mark === doubtful, proposals: false })
+  }
+
+  /** To the first boundary or proposal that was not looked at yet. */
+  toNextUnchecked(): boolean {
+    const from = this.count && this.count.checkedTo > 0 ? this.count.checkedTo : -1
+    const stop = nextStop(this.layers, this.proposals, from, 1, anyStop)
+    if (stop) this.goTo(stop.position)
+    return stop !== null
+  }
+
+  /** To the place where the machine is least decided; judging there goes on to the next such place. */
+  toMostInformative(): boolean {
+    const place = this.review.next()
+    if (place !== null) this.goTo(place)
+    else this.review.on = false
+    return place !== null
   }
 
   #go(direction: 1 | -1, extend: boolean, wanted: Parameters<typeof nextStop>[4]): boolean {
@@ -106,15 +139,71 @@ export class Counting {
   /** Confirms what lies under the cursor, or everything selected, as certain boundaries, and goes on. */
   confirm(): void {
     if (this.cursor === null) this.#advance()
-    else if (this.#judge('certain')) this.#advance()
+    else this.#judgeAndAdvance('certain')
   }
 
   doubt(): void {
-    if (this.#judge('doubtful')) this.#advance()
+    this.#judgeAndAdvance('doubtful')
   }
 
   reject(): void {
-    if (this.#judge('rejected')) this.#advance()
+    this.#judgeAndAdvance('rejected')
+  }
+
+  #judgeAndAdvance(mark: Mark): void {
+    this.#last = () => this.#judgeAndAdvance(mark)
+    if (this.#judge(mark)) this.#advance()
+  }
+
+  /** Does the last judgement, split, join or nudge again, here. */
+  repeat(): void {
+    this.#last?.()
+  }
+
+  /** Splits the layer below the cursor: where the best candidate inside it lies, else half way. */
+  split(): void {
+    const count = this.count
+    const layer = this.cursor === null ? null : layerBelow(this.layers, this.proposals, this.cursor, this.stop)
+    this.#last = () => this.split()
+    if (!count) return
+    if (!layer) {
+      this.#refuse('there is no layer below the cursor that could be split; go to its upper boundary first')
+      return
+    }
+    const position = splitPlace(this.proposals, ...layer)
+    const edit = splitLayer(this.#workbench.state, { count: count.id, position })
+    if (this.#dispatchChecked(edit, position)) this.goTo(position)
+  }
+
+  /** Joins the layers on either side of the boundary under the cursor, or of the next one below it. */
+  join(): void {
+    const count = this.count
+    const cursor = this.cursor
+    this.#last = () => this.join()
+    if (!count || cursor === null) return
+    const here = this.stop
+    const stop = standsOn(this.layers, here) ? here : nextStop(this.layers, this.proposals, cursor, 1, anyStop)
+    if (!stop) {
+      this.#refuse('there is no boundary at or below the cursor that could be taken away')
+      return
+    }
+    const edit =
+      stop.kind === 'mark'
+        ? joinLayers(this.#workbench.state, { count: count.id, boundary: this.layers.id[stop.index] })
+        : this.#decide([stop.position], 'rejected')
+    if (this.#dispatchChecked(edit, stop.position)) this.goTo(stop.position)
+  }
+
+  #refuse(words: string): void {
+    this.#workbench.dispatch(new Fault('conflict', 'cursor', this.cursor, words))
+  }
+
+  /** Writes a remark where the cursor stands. */
+  note(text: string): void {
+    const count = this.count
+    if (!count || this.cursor === null || text.trim() === '') return
+    const position = pathPixels(this.cursor)
+    this.#workbench.dispatch(addNote(this.#workbench.state, { transect: count.transect, position, text: text.trim() }))
   }
 
   /** Confirms the open proposals from the cursor (or the first) down to a position. */
@@ -147,6 +236,7 @@ export class Counting {
     const count = this.count
     const cursor = this.cursor
     if (!count || cursor === null) return
+    this.#last = () => this.nudge(distance)
     const stop = this.stop
     const to = (stop?.position ?? cursor) + distance
     if (stop?.kind === 'mark') this.moveBoundary(this.layers.id[stop.index], to)
@@ -161,6 +251,12 @@ export class Counting {
     if (!count) return
     const edit = moveBoundaries(this.#workbench.state, { count: count.id, ids: [id], positions: [to] })
     if (this.#workbench.dispatch(edit)) this.goTo(to)
+  }
+
+  /** Gives one boundary another mark, wherever the cursor is. */
+  markAs(id: number, mark: Mark): void {
+    const count = this.count
+    if (count) this.#workbench.dispatch(markBoundaries(this.#workbench.state, { count: count.id, ids: [id], mark }))
   }
 
   /** Begins a span at the cursor, ends it at the second call; a selected stretch becomes one at once. */
@@ -198,12 +294,14 @@ export class Counting {
   escape(): void {
     this.anchor = null
     this.pendingSpan = null
+    this.review.on = false
   }
 
   #advance(): void {
     const end = this.selection?.[1] ?? this.cursor
     this.anchor = null
     if (end !== null) this.cursor = end
+    if (this.review.on && this.toMostInformative()) return
     if (!this.toNextOpen()) this.step(1)
   }
 
@@ -265,13 +363,4 @@ export class Counting {
     const checked = to > count.checkedTo ? setCheckedTo(this.#workbench.state, { count: count.id, to }) : null
     return this.#workbench.dispatch(joined([edit, checked]))
   }
-}
-
-/** Edits made from the same state as one: the first says what was done; the first Fault stands for all. */
-function joined(outcomes: readonly (Outcome<Edit> | null)[]): Outcome<Edit> | null {
-  const present = outcomes.filter((outcome) => outcome !== null)
-  const fault = present.find((outcome) => outcome instanceof Fault)
-  if (fault) return fault
-  const edits = present.filter((outcome): outcome is Edit => !(outcome instanceof Fault))
-  return edits.length === 0 ? null : { ...edits[0], steps: edits.flatMap(({ steps }) => steps) }
 }

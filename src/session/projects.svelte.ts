@@ -1,8 +1,11 @@
 import { Fault } from '../../worker/check.ts'
+import { bringCounts } from '../commands/bringCounts.ts'
+import type { Project } from '../document/project.ts'
 import type { Recovered } from '../document/recover.ts'
 import { newState } from '../document/state.ts'
 import type { WorkbenchState } from '../document/state.ts'
 import type { Autosave } from './autosave.svelte.ts'
+import { countingPacket } from './countingPacket.ts'
 import { JournalStore } from './journalStore.ts'
 import type { ProjectEntry } from './journalStore.ts'
 import type { Notices } from './notices.svelte.ts'
@@ -116,23 +119,22 @@ export class Projects {
 
   /** The project on the bench as one file, with its scans inside when asked. */
   async toFile(withScans: boolean): Promise<Blob> {
-    const scans: PackedScan[] = []
-    if (withScans) {
-      for (const { scan } of this.#workbench.project.sections) {
-        const kept = await this.#desk.fileOf(scan.sha256)
-        if (!kept) {
-          throw new Fault(
-            'unreadable',
-            'scan',
-            scan.name,
-            `${scan.name} is not at hand; open its file first, or save without scans`,
-          )
-        }
-        if (!scans.some(({ sha256 }) => sha256 === scan.sha256))
-          scans.push({ sha256: scan.sha256, name: scan.name, file: kept.file })
-      }
-    }
+    const scans = withScans ? await this.#scansOf(this.#workbench.state.project) : []
     return saveProjectFile(this.#workbench.state, scans)
+  }
+
+  /** A transect to be counted elsewhere, as a project file without counts. */
+  async toPacket(transect: string, withScan: boolean): Promise<Blob> {
+    const stamp = { time: Date.now(), author: this.#workbench.author }
+    const packet = countingPacket(this.#workbench.state, transect, crypto.randomUUID(), stamp)
+    return saveProjectFile(packet, withScan ? await this.#scansOf(packet.project) : [])
+  }
+
+  /** Takes the counts of a file, made elsewhere, into the project on the bench; a file that does not fit changes nothing. */
+  async bringHome(file: Blob): Promise<boolean> {
+    const opened = await openProjectFile(file)
+    if (opened instanceof Fault) throw opened
+    return this.#workbench.dispatch(bringCounts(this.#workbench.state, { from: opened.state.project }))
   }
 
   /** Forgets a kept project for good. */
@@ -145,6 +147,21 @@ export class Projects {
     await store.remove(id)
     store.releaseProject(id)
     await this.refresh()
+  }
+
+  /** The scans of a project, for a file that carries them; rejects with a Fault when one is not at hand. */
+  async #scansOf(project: Project): Promise<PackedScan[]> {
+    const scans: PackedScan[] = []
+    for (const { scan } of project.sections) {
+      if (scans.some(({ sha256 }) => sha256 === scan.sha256)) continue
+      const kept = await this.#desk.fileOf(scan.sha256)
+      if (!kept) {
+        const message = `${scan.name} is not at hand; open its file first, or save without scans`
+        throw new Fault('unreadable', 'scan', scan.name, message)
+      }
+      scans.push({ sha256: scan.sha256, name: scan.name, file: kept.file })
+    }
+    return scans
   }
 
   async #putAside(): Promise<void> {

@@ -1,16 +1,23 @@
+import { untrack } from 'svelte'
 import type { ChronologyRequest } from '../../worker/core/chronology.ts'
-import type { Count, Section, SectionSpan, SectionTransect } from '../document/project.ts'
+import { pathLength } from '../../worker/core/transect.ts'
+import { agreedName } from '../commands/settleSites.ts'
+import type { Count, Note, Section, SectionSpan, SectionTransect } from '../document/project.ts'
 import type { Cause } from '../document/transaction.ts'
 import { Autosave } from './autosave.svelte.ts'
 import { ChronologyDesk, countedBoundaries } from './chronologyDesk.svelte.ts'
 import { Comparison } from './comparison.svelte.ts'
 import { Counting } from './counting.svelte.ts'
+import { Dating } from './dating.svelte.ts'
+import type { DatingSubject } from './dating.svelte.ts'
 import { Detection } from './detection.svelte.ts'
+import { notesInSight } from './notesInSight.ts'
 import { Notices } from './notices.svelte.ts'
 import { openDemo } from './demo.ts'
 import { Projects } from './projects.svelte.ts'
 import { ScanDesk, wordsOf } from './scanDesk.svelte.ts'
 import type { ScanKeeper } from './scanDesk.svelte.ts'
+import { Settling } from './settling.svelte.ts'
 import { Workbench } from './workbench.svelte.ts'
 import type { WorkerClient } from './workerClient.ts'
 
@@ -25,6 +32,9 @@ export const steps = [
 ] as const
 export type StepId = (typeof steps)[number]['id']
 
+/** A blind count checked to this share of its transect is as good as done. */
+const finishedShare = 0.95
+
 /** Everything that runs while the page is open, and which section, transect and count are at hand. */
 export class Session {
   readonly notices = new Notices()
@@ -37,9 +47,13 @@ export class Session {
   readonly counting: Counting
   readonly chronology: ChronologyDesk
   readonly comparison: Comparison
+  readonly dating: Dating
+  readonly settling: Settling
   step = $state<StepId>('scan')
   #sectionId = $state('')
   #countId = $state('')
+  /** Blind counts under way whose counter asked to see the others. */
+  #opened = $state.raw<ReadonlySet<string>>(new Set())
 
   constructor(client: WorkerClient, keeper: ScanKeeper) {
     this.client = client
@@ -54,6 +68,11 @@ export class Session {
     }))
     this.chronology = new ChronologyDesk(client, () => this.chronologyRequest)
     this.comparison = new Comparison(client, () => this.compared)
+    this.settling = new Settling(this.workbench, this.comparison, this.counting, () => ({
+      transect: this.transect?.id ?? null,
+      agreed: this.agreed,
+    }))
+    this.dating = new Dating(client, () => this.datingSubject)
     this.autosave.onFailure = (words) => this.notices.trouble(words)
   }
 
@@ -84,14 +103,35 @@ export class Session {
     const spans = this.spans.map(({ from, to, kind }) => ({ from, to, kind }))
     return { scan: this.scan.info.sha256, transect: { points, width, tilt, masks }, spans, recipe: this.section.recipe }
   })
-  /** Counts with at least one boundary: a count just begun says nothing of the error yet. */
-  counted: readonly Count[] = $derived(this.counts.filter(({ layers }) => layers.position.length > 0))
-  /** The counts of the transect at hand, by name, that can be set against one another. */
-  compared = $derived.by(() =>
-    this.counted
-      .filter(({ transect }) => transect === this.transect?.id)
-      .map((count) => ({ name: this.countName(count), count })),
+  /** The latest agreed count of the transect at hand; null: none was begun. */
+  agreed: Count | null = $derived.by(
+    () => this.counts.findLast((count) => count.transect === this.transect?.id && this.#isAgreed(count)) ?? null,
   )
+  /** Independent counts with at least one boundary: a count just begun says nothing of the error yet. */
+  counted: readonly Count[] = $derived(
+    this.counts.filter((count) => count.layers.position.length > 0 && !this.#isAgreed(count)),
+  )
+  /** The count at hand is blind and its counter not yet at the end: no other is shown, in any step. */
+  sealed: boolean = $derived.by(() => {
+    const { count, transect } = this
+    if (!count?.blind || !transect || this.#opened.has(count.id)) return false
+    return count.checkedTo < finishedShare * pathLength(transect.points)
+  })
+  /** Notes that may be seen beside the count at hand. */
+  notes: readonly Note[] = $derived.by(() => {
+    const { count, transect } = this
+    if (!transect || this.workbench.project.notes.length === 0) return []
+    // The journal only says which notes are older than the count; it changes with every key and need not be followed.
+    const { journal } = untrack(() => this.workbench.state)
+    return notesInSight(this.workbench.project.notes, journal, transect.id, this.sealed ? count : null)
+  })
+  /** The counts of the transect at hand, by name, that can be set against one another. */
+  compared = $derived.by(() => {
+    if (this.sealed) return []
+    return this.counted
+      .filter(({ transect }) => transect === this.transect?.id)
+      .map((count) => ({ name: this.countName(count), count }))
+  })
   /** Calendar year of the youngest counted varve; null where the count floats. */
   anchorYear: number | null = $derived.by(() => {
     const { coringYear, topIntact, topYearOpen } = this.workbench.project.core
@@ -111,6 +151,23 @@ export class Session {
       depthTop: section.depthTop,
       convention: repeats.length > 1 ? convention : 'half-layer',
       anchorYear: this.anchorYear,
+    }
+  })
+  /** What the calendar ages are worked out from: the count at hand with its doubts, the dates, the anchor. */
+  datingSubject: DatingSubject | null = $derived.by(() => {
+    const { count, section } = this
+    if (!count || !section?.scale) return null
+    const { position, doubtful } = countedBoundaries(count.layers)
+    return {
+      count: {
+        position,
+        probability: Float64Array.from(doubtful, (inDoubt) => (inDoubt ? 0.5 : 1)),
+        spans: this.spans.map(({ from, to, kind }) => ({ from, to, kind })),
+        mmPerPx: section.scale.mmPerPx,
+        depthTop: section.depthTop,
+      },
+      dates: this.workbench.project.dates,
+      topYear: this.anchorYear,
     }
   })
   /** Other counts are out of sight while this one is made blind. */
@@ -143,12 +200,14 @@ export class Session {
     this.#sectionId = section
     this.#countId = ''
     this.counting.escape()
+    this.counting.review.forget()
     this.counting.cursor = null
   }
 
   chooseCount(count: string): void {
     this.#countId = count
     this.counting.escape()
+    this.counting.review.forget()
     this.counting.cursor = null
     this.#takeAuthor()
   }
@@ -164,6 +223,15 @@ export class Session {
   #takeAuthor(): void {
     const counter = this.workbench.project.counters.find(({ id }) => id === this.count?.counter)
     if (counter) this.workbench.author = counter.name
+  }
+
+  /** Ends the blindness of the count at hand: its counter wants to see the others. */
+  unseal(): void {
+    if (this.count) this.#opened = new Set([...this.#opened, this.count.id])
+  }
+
+  #isAgreed(count: Count): boolean {
+    return this.counterName(count) === agreedName
   }
 
   counterName(count: Count): string {

@@ -1,6 +1,8 @@
 import { Fault } from '../../worker/check.ts'
 import { canRedo, canUndo, redo, undo } from '../document/history.ts'
 import type { Outcome } from '../document/outcome.ts'
+import type { Project } from '../document/project.ts'
+import { projectAt } from '../document/projectAt.ts'
 import { applyEdit, applyTransaction, newState } from '../document/state.ts'
 import type { WorkbenchState } from '../document/state.ts'
 import type { Edit, Stamp, Transaction } from '../document/transaction.ts'
@@ -15,7 +17,9 @@ export class Workbench {
   #notices: Notices
   #autosave: Autosave
   state = $state.raw<WorkbenchState>(newState('none'))
-  project = $derived(this.state.project)
+  /** The project as of an earlier edit, while that is looked at; null: the present. */
+  past = $state.raw<{ project: Project; seq: number } | null>(null)
+  project: Project = $derived(this.past?.project ?? this.state.project)
   canUndo = $derived(canUndo(this.state))
   canRedo = $derived(canRedo(this.state))
   /** Who is at the bench: the author of what is done next. */
@@ -31,6 +35,18 @@ export class Workbench {
   /** Puts another document on the bench; the one there is saved already. */
   lay(state: WorkbenchState): void {
     this.state = state
+    this.past = null
+  }
+
+  /** Shows the project as it was after an edit, to be looked at only; the latest edit is the present. */
+  lookBack(seq: number): void {
+    const project = projectAt(this.state, seq)
+    if (project instanceof Fault) this.#refuse(project)
+    else this.past = seq === this.state.version ? null : { project, seq }
+  }
+
+  return(): void {
+    this.past = null
   }
 
   /**
@@ -39,6 +55,7 @@ export class Workbench {
    */
   dispatch(edit: Outcome<Edit> | null): boolean {
     if (edit === null) return false
+    if (this.past) return this.#mayWrite()
     if (edit instanceof Fault) return this.#refuse(edit)
     if (edit.steps.length === 0 || !this.#mayWrite()) return false
     const outcome = applyEdit(this.state, edit, this.#stamp())
@@ -74,7 +91,12 @@ export class Workbench {
         'This project is open in another tab, which does the writing. Close that tab, then reload this one.',
       )
     }
-    return !this.readOnly
+    if (this.past) {
+      this.#notices.trouble(
+        `This is the project as of edit ${this.past.seq}, to look at only. Return to the present to change it.`,
+      )
+    }
+    return !this.readOnly && !this.past
   }
 
   #refuse(fault: Fault): false {

@@ -8,9 +8,18 @@ const words: Record<string, string> = {
   move: 'moved',
   mark: 'marked',
   remove: 'removed',
+  split: 'split a layer with',
+  join: 'joined layers across',
+  note: 'wrote a note',
+  'note.revise': 'changed a note',
+  'note.remove': 'removed a note',
   undo: 'took back an edit',
   redo: 'did again what was taken back',
   demo: 'laid out the demo',
+  agree: 'began the agreed count',
+  settle: 'settled a difference',
+  bring: 'brought counts home',
+  packet: 'received a counting packet',
   section: 'added a section',
   count: 'began a count',
   'count.remove': 'removed a count',
@@ -33,7 +42,7 @@ const words: Record<string, string> = {
 export function acts({ userEvent, steps }: Transaction): string {
   const boundaries = steps.reduce((sum, step) => sum + boundariesOf(step), 0)
   const what = words[userEvent] ?? userEvent.replaceAll('.', ' ')
-  if (!['accept', 'reject', 'place', 'move', 'mark', 'remove'].includes(userEvent)) return what
+  if (!['accept', 'reject', 'place', 'move', 'mark', 'remove', 'split', 'join'].includes(userEvent)) return what
   return `${what} ${boundaries} ${boundaries === 1 ? 'boundary' : 'boundaries'}`
 }
 
