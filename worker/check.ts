@@ -44,18 +44,26 @@ export function checkPositive(field: string, value: unknown): number {
 }
 
 export function checkAtLeast(field: string, value: unknown, least: number): number {
-  if (typeof value !== 'number' || !(value >= least) || value === Infinity) reject(field, value, `a number of at least ${least}`)
+  if (typeof value !== 'number' || !(value >= least) || value === Infinity)
+    reject(field, value, `a number of at least ${least}`)
   return value
 }
 
 export function checkWithin(field: string, value: unknown, least: number, most: number): number {
-  if (typeof value !== 'number' || !(value >= least && value <= most)) reject(field, value, `between ${least} and ${most}`)
+  if (typeof value !== 'number' || !(value >= least && value <= most))
+    reject(field, value, `between ${least} and ${most}`)
   return value
 }
 
 export function checkInteger(field: string, value: unknown, least: number, most = Number.MAX_SAFE_INTEGER): number {
   if (typeof value !== 'number' || !Number.isInteger(value) || value < least || value > most) {
-    reject(field, value, most === Number.MAX_SAFE_INTEGER ? `a whole number of at least ${least}` : `a whole number from ${least} to ${most}`)
+    reject(
+      field,
+      value,
+      most === Number.MAX_SAFE_INTEGER
+        ? `a whole number of at least ${least}`
+        : `a whole number from ${least} to ${most}`,
+    )
   }
   return value
 }

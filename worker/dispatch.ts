@@ -1,7 +1,11 @@
 import { Fault } from './check.ts'
+import { agesTable } from './core/ageTables.ts'
 import { compareCounts } from './core/counts.ts'
 import { buildChronology } from './core/chronology.ts'
 import { readCountTable } from './core/countTable.ts'
+import { parseCurve } from './core/curveFile.ts'
+import { dateCore } from './core/dating.ts'
+import { layersOfCount } from './core/layersOfCount.ts'
 import { paintSamples, stretchedDisplay } from './core/display.ts'
 import { runCount } from './core/ladder.ts'
 import { extractProfile } from './core/profile.ts'
@@ -69,6 +73,9 @@ const handlers: { [K in JobKind]: Handler<K> } = {
   countTable: ({ text, name, columns }) => readCountTable(text, name, columns),
   agreement: ({ counts, options }, circumstances) => drive(compareCounts(counts, options), circumstances),
   chronology: (request) => buildChronology(request),
+  layersOfCount: (request) => layersOfCount(request),
+  date: (request, circumstances) => drive(dateCore(request), circumstances),
+  curve: ({ text, name, sha256 }) => parseCurve(text, { name, sha256 }),
   thickness: ({ thickness, window }) => ({
     summary: thicknessSummary(thickness),
     mean: runningMean(thickness, window),
@@ -81,6 +88,8 @@ const handlers: { [K in JobKind]: Handler<K> } = {
         return profileTable(request.profile, request.detrended, request.mmPerPx, request.depthTop)
       case 'chronology':
         return chronologyTable(request.chronology)
+      case 'ages':
+        return agesTable(request.names, request.depth, request.ages)
     }
   },
   profile({ scan, transect, recipe }, circumstances) {

@@ -1,12 +1,17 @@
 import type { Candidates } from './core/candidates.ts'
 import type { Chronology, ChronologyRequest } from './core/chronology.ts'
 import type { Agreement, AgreementOptions } from './core/counts.ts'
+import type { CountedLayers } from './core/countedLayers.ts'
+import type { Curve } from './core/curve.ts'
+import type { DatingRequest, DatingResult } from './core/dating.ts'
+import type { CountOfSection } from './core/layersOfCount.ts'
 import type { CountColumns, CountTable } from './core/countTable.ts'
 import type { CounterMarks } from './core/counterMarks.ts'
 import type { Detrended } from './core/detrend.ts'
 import type { Display } from './core/display.ts'
 import type { Ladder, Span } from './core/ladder.ts'
 import type { Profile, ProfileRecipe } from './core/profile.ts'
+import type { LevelAges } from './core/levelAges.ts'
 import type { ThicknessSummary } from './core/rates.ts'
 import type { Recipe } from './core/recipe.ts'
 import type { Orientation } from './core/scan.ts'
@@ -25,6 +30,7 @@ export type TableRequest =
   | { table: 'layers'; boundaries: YearBoundary[]; spans: Span[]; mmPerPx: number | null; depthTop: number }
   | { table: 'profile'; profile: Profile; detrended: Detrended; mmPerPx: number | null; depthTop: number }
   | { table: 'chronology'; chronology: ChronologyColumns }
+  | { table: 'ages'; names: string[]; depth: Float64Array; ages: LevelAges }
 
 /** One type map: every job's request and reply. Scans are named by their SHA-256 once opened. */
 export interface Jobs {
@@ -46,6 +52,12 @@ export interface Jobs {
   agreement: { request: { counts: CounterMarks[]; options?: Partial<AgreementOptions> }; reply: Agreement }
   /** Years and their error at every boundary of a count. */
   chronology: { request: ChronologyRequest; reply: Chronology }
+  /** The layers of a count as rows for the ages; see core/layersOfCount.ts. */
+  layersOfCount: { request: CountOfSection; reply: CountedLayers }
+  /** Exact calendar ages of every row of counted layers, given all dates. */
+  date: { request: DatingRequest; reply: DatingResult }
+  /** A calibration curve from the text of its file. */
+  curve: { request: { text: string; name: string; sha256: string }; reply: Curve }
   /** Figures and running mean of a thickness series. */
   thickness: {
     request: { thickness: Float64Array; window: number }

@@ -123,7 +123,10 @@ export class JournalStore {
       }
       const request = this.#locks.request(`${this.#name} project ${id}`, { ifAvailable: true }, hold)
       request.catch(reject)
-      this.#released.set(id, request.catch(() => undefined))
+      this.#released.set(
+        id,
+        request.catch(() => undefined),
+      )
     })
   }
 
