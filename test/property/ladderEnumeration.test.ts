@@ -30,6 +30,7 @@ function drawLaw(random: Random): YearLaw {
   const raw = Array.from({ length: 16 }, () => 0.2 + random.uniform())
   const mean = raw.reduce((total, one) => total + one, 0) / raw.length
   return {
+    trust: random.uniform() < 0.5 ? 1 : 0.4 + 0.6 * random.uniform(),
     thickness: thicknessLaw(0.1 + 0.5 * random.uniform(), 0.02 * random.uniform()),
     inner: { rate: random.uniform(), phase: Float64Array.from(raw, (one) => one / mean) },
   }
@@ -43,7 +44,7 @@ function yearWeight({ u, shows }: Stretch, law: YearLaw, i: number, j: number): 
   for (let k = i + 1; k < j; k++) {
     if (shows[k] === 1 && weight > 0) weight *= law.inner.phase[Math.min(15, Math.floor((16 * (u[k] - u[i])) / d))] / d
   }
-  return weight
+  return weight ** law.trust
 }
 
 /** Every subset of the sites with its weight. */

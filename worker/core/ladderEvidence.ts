@@ -12,8 +12,8 @@ export interface Evidence {
   coefficients: Float64Array
 }
 
-/** Features of every candidate, row-major [candidates x features]; 0 is a usual year. */
-export interface Features {
+/** Columns of every candidate, row-major [candidates x features]. */
+export interface Columns {
   count: number
   values: Float64Array
 }
@@ -31,66 +31,89 @@ const mostLogOdds = 6
 /** Logs of features are bounded: beyond a twelfth or three times the usual nothing more is learned. */
 const leastLog = -2.5
 const mostLog = 1.1
-
-/** Typical looks of a year's boundary: what features are measured against. */
-export interface Reference {
-  logProminence: number
-  logEdge: number
-  /** Width over local thickness. */
-  logWidth: number
-}
+/** Layers over which the usual looks are remembered, and layers that the core's mean is worth. */
+const referenceMemory = 15
+const referencePrior = 5
 
 const logOf = (value: number, least: number) => Math.log(Math.max(value, least))
 const bounded = (value: number) => (Number.isNaN(value) ? 0 : Math.max(leastLog, Math.min(mostLog, value)))
 
-/** Before anything is believed: the middle of as many of the strongest candidates as there should be layers. */
-export function firstReference(candidates: Candidates, width: Float64Array, layers: number): Reference {
-  const middle = (column: Float64Array) => {
-    const sorted = column.filter((value) => value > 0).sort()
-    if (sorted.length === 0) return 0
-    const strong = Math.max(1, Math.min(sorted.length, Math.round(layers)))
-    return Math.log(sorted[sorted.length - 1 - Math.floor(strong / 2)])
-  }
-  return {
-    logProminence: middle(candidates.prominence),
-    logEdge: middle(candidates.edgeStrength),
-    logWidth: middle(width),
-  }
-}
-
-/** Mean looks of the candidates by their belief. */
-export function referenceOf(
-  candidates: Candidates,
-  width: Float64Array,
-  belief: Float64Array,
-  before: Reference,
-): Reference {
-  let weight = 5
-  let prominence = weight * before.logProminence
-  let edge = weight * before.logEdge
-  let breadth = weight * before.logWidth
-  for (let i = 0; i < belief.length; i++) {
-    if (!(candidates.prominence[i] > 0 && candidates.edgeStrength[i] > 0 && width[i] > 0)) continue
-    weight += belief[i]
-    prominence += belief[i] * Math.log(candidates.prominence[i])
-    edge += belief[i] * Math.log(candidates.edgeStrength[i])
-    breadth += belief[i] * Math.log(width[i])
-  }
-  return { logProminence: prominence / weight, logEdge: edge / weight, logWidth: breadth / weight }
-}
-
-export function featuresOf(candidates: Candidates, width: Float64Array, reference: Reference): Features {
+/** The looks of the candidates as they are; widths against the local thickness `median` [candidates]. */
+export function looksOf(candidates: Candidates, median: Float64Array): Columns {
   const count = candidates.position.length
   const values = new Float64Array(count * featureCount)
   for (let i = 0; i < count; i++) {
     const at = i * featureCount
-    values[at] = bounded(logOf(candidates.prominence[i], 1e-3) - reference.logProminence)
-    values[at + 1] = bounded(logOf(candidates.edgeStrength[i], 1e-3) - reference.logEdge)
-    values[at + 2] = bounded(candidates.continuity[i] - 0.9)
-    // A wide lamina is as good as a usual one; a narrow one is often grain that survived the smoothing.
-    values[at + 3] = Math.min(0.5, bounded(logOf(width[i], 1e-3) - reference.logWidth))
+    values[at] = logOf(candidates.prominence[i], 1e-3)
+    values[at + 1] = logOf(candidates.edgeStrength[i], 1e-3)
+    values[at + 2] = Number.isNaN(candidates.continuity[i]) ? 1 : candidates.continuity[i]
+    values[at + 3] = logOf(candidates.width[i] / median[i], 1e-3)
   }
   return { count, values }
+}
+
+/** The usual looks before anything is believed: the middle of as many of the strongest candidates as there should be layers. */
+export function firstReference({ count, values }: Columns, layers: number): Columns {
+  const reference = new Float64Array(count * featureCount)
+  for (let f = 0; f < featureCount; f++) {
+    const sorted = Float64Array.from({ length: count }, (_, i) => values[i * featureCount + f]).sort()
+    const strong = Math.max(1, Math.min(count, Math.round(layers)))
+    const middle = count > 0 ? sorted[count - 1 - Math.floor(strong / 2)] : 0
+    for (let i = 0; i < count; i++) reference[i * featureCount + f] = middle
+  }
+  return { count, values: reference }
+}
+
+/**
+ * The usual looks of a year around each candidate: means over the candidates by their belief, remembered over some
+ * layers to either side, so that a stretch of thin, blurred or pale years is held against itself.
+ */
+export function localReference({ count, values }: Columns, belief: Float64Array): Columns {
+  const reference = new Float64Array(count * featureCount)
+  const weight = new Float64Array(count)
+  let all = 1e-9
+  const mean = new Float64Array(featureCount)
+  for (let i = 0; i < count; i++) {
+    all += belief[i]
+    for (let f = 0; f < featureCount; f++) mean[f] += belief[i] * values[i * featureCount + f]
+  }
+  const sum = new Float64Array(featureCount)
+  for (const direction of [1, -1]) {
+    sum.fill(0)
+    let near = 0
+    for (let step = 0; step < count; step++) {
+      const i = direction > 0 ? step : count - 1 - step
+      const decay = Math.exp(-belief[i] / referenceMemory)
+      // The candidate itself is counted on the way down only.
+      const own = direction > 0 ? belief[i] : 0
+      near = near * decay
+      for (let f = 0; f < featureCount; f++) {
+        sum[f] *= decay
+        reference[i * featureCount + f] += sum[f] + own * values[i * featureCount + f]
+        sum[f] += belief[i] * values[i * featureCount + f]
+      }
+      weight[i] += near + own
+      near += belief[i]
+    }
+  }
+  for (let i = 0; i < count; i++) {
+    for (let f = 0; f < featureCount; f++) {
+      const at = i * featureCount + f
+      reference[at] = (reference[at] + (referencePrior * mean[f]) / all) / (weight[i] + referencePrior)
+    }
+  }
+  return { count, values: reference }
+}
+
+/** What the regression sees: looks against the usual looks, bounded. */
+export function featuresOf({ count, values }: Columns, reference: Columns): Columns {
+  const features = new Float64Array(count * featureCount)
+  for (let at = 0; at < features.length; at++) {
+    const difference = bounded(values[at] - reference.values[at])
+    // A wide lamina is as good as a usual one; a narrow one is often grain that survived the smoothing.
+    features[at] = at % featureCount === 3 ? Math.min(0.5, difference) : difference
+  }
+  return { count, values: features }
 }
 
 /** Evidence to start from: the prior's, with a constant of its own. */
@@ -106,7 +129,7 @@ export function logPrior({ coefficients }: Evidence): number {
 }
 
 /** Log odds of each candidate. */
-export function logOddsOf({ count, values }: Features, { coefficients }: Evidence): Float64Array {
+export function logOddsOf({ count, values }: Columns, { coefficients }: Evidence): Float64Array {
   const odds = new Float64Array(count)
   for (let i = 0; i < count; i++) {
     let sum = coefficients[0]
@@ -117,7 +140,7 @@ export function logOddsOf({ count, values }: Features, { coefficients }: Evidenc
 }
 
 /** M-step: the most probable coefficients given the beliefs, by a few Newton steps from the present ones. */
-export function learnEvidence({ count, values }: Features, belief: Float64Array, present: Evidence): Evidence {
+export function learnEvidence({ count, values }: Columns, belief: Float64Array, present: Evidence): Evidence {
   const size = featureCount + 1
   let coefficients = present.coefficients
   for (let step = 0; step < 4; step++) {

@@ -19,6 +19,8 @@ export const phaseSteps = 16
 export interface YearLaw {
   thickness: ThicknessLaw
   inner: InnerLaw
+  /** Power to which the weight of a year is raised: 1 is the model as it stands, less than 1 trusts it less. */
+  trust: number
 }
 
 export function evenInnerLaw(rate: number): InnerLaw {
@@ -27,7 +29,7 @@ export function evenInnerLaw(rate: number): InnerLaw {
 
 /**
  * Weights of pairs of sites as the two boundaries of one year,
- *   g(i, j) = f(d) e^(-rate) prod over the sites k between that show something: phase((u_k - u_i) / d) / d,   d = u_j - u_i,
+ *   g(i, j) = [f(d) e^(-rate) prod over the sites k between that show something: phase((u_k - u_i) / d) / d]^trust,   d = u_j - u_i,
  * for all j from i + 1 while d stays within the law's table and no forced site is jumped over. Pairs of site i are
  * weight[offset[i]] (for j = i + 1) to weight[offset[i + 1] - 1].
  */
@@ -36,7 +38,7 @@ export interface LayerPairs {
   weight: Float64Array
 }
 
-export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner }: YearLaw): LayerPairs {
+export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner, trust }: YearLaw): LayerPairs {
   const n = u.length
   const { density, longest, perUnit } = thickness
   const offset = new Int32Array(n + 1)
@@ -59,7 +61,7 @@ export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner }: 
       if (g > 0) {
         for (let s = 0; s < inside; s++) g *= inner.phase[Math.min(steps - 1, Math.floor((seen[s] * steps) / d))] / d
       }
-      weight[at] = g
+      weight[at] = trust === 1 ? g : g ** trust
       if (shows[j] === 1) seen[inside++] = d
     }
   }
@@ -67,6 +69,11 @@ export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner }: 
 }
 
 /** What the law gives a layer longer than its table: an unmarked bed, with inner laminae at an even rate over its length. */
-export function bedTail({ thickness, inner }: YearLaw, distance: number): number {
-  return (thickness.bedShare * Math.exp(-(distance - bedFrom) / bedMean - inner.rate)) / bedMean
+export function bedTail({ thickness, inner, trust }: YearLaw, distance: number): number {
+  return ((thickness.bedShare * Math.exp(-(distance - bedFrom) / bedMean - inner.rate)) / bedMean) ** trust
+}
+
+/** Distance over which that tail falls by a factor of e. */
+export function tailLength({ trust }: YearLaw): number {
+  return bedMean / trust
 }

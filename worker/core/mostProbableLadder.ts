@@ -1,7 +1,7 @@
-import { bedTail } from './layerPairs.ts'
+import { bedTail, tailLength } from './layerPairs.ts'
 import type { YearLaw } from './layerPairs.ts'
 import type { Messages, Stretch } from './semiMarkov.ts'
-import { bedMean, emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
+import { emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
 
 /**
  * The single most probable ladder of a stretch (Viterbi 1967, for explicit durations). Indices of its sites, sorted.
@@ -13,6 +13,7 @@ export function mostProbableLadder(stretch: Stretch, law: YearLaw, { pairs }: Me
   const best = new Float64Array(n)
   const from = new Int32Array(n).fill(-1)
   const { thickness } = law
+  const length = tailLength(law)
   const logTail = Math.log(bedTail(law, 0))
   // Best site further back than the table, with the exponential tail taken out of its score.
   let oldBest = -Infinity
@@ -21,13 +22,13 @@ export function mostProbableLadder(stretch: Stretch, law: YearLaw, { pairs }: Me
   let open = true
   for (let j = 0; j < n; j++) {
     while (entered < j && u[j] - u[entered] > thickness.longest) {
-      const score = best[entered] + u[entered] / bedMean
+      const score = best[entered] + u[entered] / length
       if (score > oldBest) [oldBest, oldSite] = [score, entered]
       entered++
     }
     let score = open ? Math.log(recurrenceAt(thickness, u[j] - start)) : -Infinity
     let site = -1
-    const old = oldBest + logTail - u[j] / bedMean
+    const old = oldBest + logTail - u[j] / length
     if (old > score) [score, site] = [old, oldSite]
     for (let i = entered; i < j; i++) {
       const one = best[i] + Math.log(pairs.weight[pairs.offset[i] + j - i - 1])

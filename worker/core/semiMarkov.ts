@@ -1,6 +1,6 @@
-import { bedTail, layerPairs } from './layerPairs.ts'
+import { bedTail, layerPairs, tailLength } from './layerPairs.ts'
 import type { LayerPairs, YearLaw } from './layerPairs.ts'
-import { bedMean, emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
+import { emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
 
 /**
  * A stretch of core without a hiatus: sites that may be boundaries, in thickness coordinates (one unit = the local median
@@ -128,7 +128,7 @@ class Running implements Sweep {
   }
 
   advance(step: number): void {
-    const decay = Math.exp(-step / bedMean)
+    const decay = Math.exp(-step / tailLength(this.law))
     this.tail *= decay
     this.mass *= decay
   }

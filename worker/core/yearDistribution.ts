@@ -1,7 +1,7 @@
-import { bedTail } from './layerPairs.ts'
+import { bedTail, tailLength } from './layerPairs.ts'
 import type { YearLaw } from './layerPairs.ts'
 import type { Messages, Stretch } from './semiMarkov.ts'
-import { bedMean, survivalAt } from './thicknessLaw.ts'
+import { survivalAt } from './thicknessLaw.ts'
 
 /** Probability of each number of years: probability[k] belongs to `first + k` years. */
 export interface YearDistribution {
@@ -11,8 +11,8 @@ export interface YearDistribution {
 
 /** Joint probability below which a pair of neighbours is not followed; 20,000 years lose less than 1e-10 by it. */
 const leastPair = 1e-16
-/** Beyond this distance, in local medians, the exponential tail is below 1e-16. */
-const furthest = 40 * bedMean
+/** Beyond so many of its lengths the exponential tail is below 1e-16. */
+const furthest = 40
 
 /** A count distribution under construction: values[k] belongs to first + k. */
 interface Band {
@@ -93,7 +93,7 @@ function lastShare(stretch: Stretch, law: YearLaw, { up, pairs }: Messages, j: n
   const { u, weight, forced, end } = stretch
   const own = Math.log(up.value[j] / weight[j]) + up.scale[j]
   let share = 0
-  for (let k = to; k < u.length && u[k] - u[j] < furthest; k++) {
+  for (let k = to; k < u.length && u[k] - u[j] < furthest * tailLength(law); k++) {
     const at = pairs.offset[j] + k - j - 1
     const g = at < pairs.offset[j + 1] ? pairs.weight[at] : bedTail(law, u[k] - u[j])
     share += g * up.value[k] * Math.exp(up.scale[k] - own)
@@ -112,7 +112,7 @@ class Tail {
   constructor(private readonly law: YearLaw) {}
 
   moveTo(u: number): void {
-    if (this.band !== nothing) this.logFactor -= (u - this.at) / bedMean
+    if (this.band !== nothing) this.logFactor -= (u - this.at) / tailLength(this.law)
     this.at = u
   }
 
