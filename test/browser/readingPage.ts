@@ -1,3 +1,6 @@
+import { mkdtempSync } from 'node:fs'
+import { tmpdir } from 'node:os'
+import { join } from 'node:path'
 import { fileURLToPath } from 'node:url'
 import type { Browser, Page } from 'playwright-core'
 import { createServer } from 'vite'
@@ -30,6 +33,8 @@ export async function openSourcePage(extraArguments: string[] = []): Promise<Sou
     root,
     configFile: `${root}vite.config.ts`,
     logLevel: 'error',
+    // A cache of its own: two servers at work on one cache tell each other's pages that they are outdated.
+    cacheDir: mkdtempSync(join(tmpdir(), 'winterclay-vite-')),
     server: { port: 0, watch: null, hmr: false },
     optimizeDeps: { noDiscovery: true },
   })
