@@ -51,7 +51,10 @@ export function calibrate(date: C14Measurement, curve: YearlyCurve): Calibration
   const [mu, curveSigma] = date.quantity === 'age' ? [curve.age, curve.ageSigma] : [curve.f14c, curve.f14cSigma]
   refuseBeyond(date, value, sigma, curve)
   const density = densityOf(date.model ?? normalModel)
-  const whole = Float64Array.from(mu, (m, i) => density(value - m, Math.hypot(sigma, curveSigma[i])))
+  const whole = new Float64Array(mu.length)
+  for (let i = 0; i < mu.length; i++) {
+    whole[i] = density(value - mu[i], Math.sqrt(sigma * sigma + curveSigma[i] * curveSigma[i]))
+  }
   const most = whole.reduce((a, b) => Math.max(a, b), 0)
   const last = whole.length - 1
   const cutAt = whole[0] > cutShare * most ? 'young end' : whole[last] > cutShare * most ? 'old end' : null
@@ -76,9 +79,9 @@ export function refuseBeyond(date: C14Measurement, value: number, sigma: number,
     // Between two years the curve passes every value between theirs.
     const next = Math.min(i + 1, mu.length - 1)
     const outside = Math.max(0, Math.min(mu[i], mu[next]) - value, value - Math.max(mu[i], mu[next]))
-    nearest = Math.min(nearest, outside / Math.hypot(sigma, curveSigma[i]))
+    nearest = Math.min(nearest, (outside * outside) / (sigma * sigma + curveSigma[i] * curveSigma[i]))
+    if (nearest <= furthest * furthest) return
   }
-  if (nearest <= furthest) return
   const names = curve.sources.map(({ name }) => name).join(' with ')
   const what = date.quantity === 'age' ? `${value} ± ${sigma} 14C a` : `F14C ${value} ± ${sigma}`
   const end = `${curve.from} to ${curve.from + mu.length - 1} cal BP`

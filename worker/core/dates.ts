@@ -135,8 +135,12 @@ function radiocarbon(
   refuseBeyond({ quantity, value, sigma }, value, sigma, curve)
   const density = densityOf(date.model ?? defaultModel(date.kind))
   const { mu, curveSigma } = sampleCurve(quantity, place, curve)
-  const spread = curveSigma.map((s) => Math.hypot(sigma, s))
-  const densities = mu.map((m, i) => (Number.isNaN(m) ? 0 : density(value - m, spread[i])))
+  const spread = new Float64Array(mu.length)
+  const densities = new Float64Array(mu.length)
+  for (let i = 0; i < mu.length; i++) {
+    spread[i] = Math.sqrt(sigma * sigma + curveSigma[i] * curveSigma[i])
+    if (!Number.isNaN(mu[i])) densities[i] = density(value - mu[i], spread[i])
+  }
   return likelihood(date, value, place, curve.from - 1950, { density: densities, expected: mu, spread })
 }
 
