@@ -35,7 +35,13 @@ describe('the table of the profile', () => {
     tilt: new Float32Array(3),
   }
   const column = Float64Array.of(0.5, NaN, -0.00001)
-  const detrended: Detrended = { trend: column, signal: column, spread: column, typicalThickness: column }
+  const detrended: Detrended = {
+    trend: column,
+    signal: column,
+    standardised: true,
+    spread: column,
+    typicalThickness: column,
+  }
   it('has a line a pixel, measured at the middle of the pixel, and empty cells where nothing is readable', () => {
     expect(profileTable(profile, detrended, 0.1)).toBe(
       'distance_px,depth_mm,intensity,detrended\n0.5,0.0500,101.2500,0.5000\n1.5,0.1500,,\n2.5,0.2500,99.0000,0.0000\n',

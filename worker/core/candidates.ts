@@ -1,11 +1,12 @@
+import { checkOneOf, checkWithin, describe, Fault } from '../check.ts'
 import type { Work } from '../work.ts'
 import type { Detrended } from './detrend.ts'
 import { findPeaks, keepDistant, parabolaVertex, selectPeaks, type Peaks } from './peaks.ts'
 import type { Profile } from './profile.ts'
-import { gaussianSmooth } from './smoothing.ts'
+import { gaussianSmoother } from './smoothing.ts'
 
 export interface CandidateRecipe {
-  /** Which lamina marks the year: the darker or the lighter one; auto decides from the profile and says so. */
+  /** Which lamina marks the year: the darker or the lighter one; auto: see `markingLamina`. The answer stands in the candidates. */
   lamina: 'dark' | 'light' | 'auto'
   /** Where in that lamina the boundary between years lies, seen downcore: its young edge, its middle, its old edge. */
   edge: 'top' | 'middle' | 'base'
@@ -41,18 +42,39 @@ const distanceShare = 0.2
 
 /** Finds the peaks that may be boundaries between years, and what speaks for each of them. */
 export function* findCandidates(detrended: Detrended, profile: Profile, recipe: CandidateRecipe): Work<Candidates> {
-  yield { stage: 'candidates', done: 0, total: 2 }
-  const lamina = recipe.lamina === 'light' ? 'light' : 'dark'
+  checkCandidateRecipe(recipe)
+  yield { stage: 'candidates', done: 0, total: profile.laneCount + 1 }
+  const lamina = recipe.lamina === 'auto' ? markingLamina(detrended.signal, recipe.edge) : recipe.lamina
   const sign = lamina === 'dark' ? -1 : 1
-  const thickness = detrended.typicalThickness
-  const signal = detrended.signal.map((value) => sign * value)
-  let peaks = findPeaks(signal, { prominence: recipe.prominence })
+  const signal = inSpreads(detrended, sign)
+  const peaks = peaksOf(signal, detrended, recipe)
+  const candidates = describePeaks(signal, peaks, detrended, recipe, lamina)
+  yield* measureContinuity(candidates, peaks, profile, detrended.typicalThickness, sign)
+  return candidates
+}
+
+/** The signal in local standard deviations, positive towards the marking lamina. */
+function inSpreads({ signal, spread, standardised }: Detrended, sign: number): Float64Array {
+  return signal.map((value, row) => sign * (standardised || !(spread[row] > 0) ? value : value / spread[row]))
+}
+
+function peaksOf(signal: Float64Array, { typicalThickness }: Detrended, recipe: CandidateRecipe): Peaks {
+  const peaks = findPeaks(signal, { prominence: recipe.prominence })
   const kept = keepDistant(
     peaks.index,
     peaks.prominence,
-    (peak) => recipe.distance ?? Math.max(2, distanceShare * thickness[peaks.index[peak]]),
+    (peak) => recipe.distance ?? Math.max(2, distanceShare * typicalThickness[peaks.index[peak]]),
   )
-  peaks = selectPeaks(peaks, (i) => kept[i] === 1)
+  return selectPeaks(peaks, (i) => kept[i] === 1)
+}
+
+function describePeaks(
+  signal: Float64Array,
+  peaks: Peaks,
+  { spread, typicalThickness }: Detrended,
+  { edge }: CandidateRecipe,
+  lamina: 'dark' | 'light',
+): Candidates {
   const count = peaks.index.length
   const candidates: Candidates = {
     position: new Float64Array(count),
@@ -70,14 +92,37 @@ export function* findCandidates(detrended: Detrended, profile: Profile, recipe: 
     const vertex = parabolaVertex(signal[row - 1], signal[row], signal[row + 1])
     candidates.peak[i] = row + 0.5 + vertex.offset
     candidates.height[i] = vertex.height
-    candidates.contrast[i] = peaks.prominence[i] * detrended.spread[row]
-    const edge = findEdge(signal, peaks, i, recipe.edge)
-    candidates.position[i] = recipe.edge === 'middle' ? candidates.peak[i] : edge.position
-    candidates.edgeStrength[i] = edge.slope * thickness[row]
+    candidates.contrast[i] = peaks.prominence[i] * spread[row]
+    const found = findEdge(signal, peaks, i, edge)
+    candidates.position[i] = edge === 'middle' ? candidates.peak[i] : found.position
+    candidates.edgeStrength[i] = found.slope * typicalThickness[row]
   }
-  yield { stage: 'candidates', done: 1, total: 2 }
-  measureContinuity(candidates, peaks, profile, thickness, sign)
   return candidates
+}
+
+/** Skewness below which neither kind of lamina has the sharper contacts. */
+const clearSkewness = 0.15
+
+/**
+ * Which lamina marks the year when the recipe leaves it open: the one whose edge named by the rule is the sharp contact. The
+ * clay that settles in winter grades up from the silt below it and is cut off by the next summer: downcore the intensity
+ * jumps at its top and comes back slowly. A scan in which that jump is towards dark has dark winters, the other way round
+ * (a radiograph shown as density) light ones; the skewness of the steps from row to row tells which. For the middle of a
+ * lamina the thinner kind marks the year, told by the skewness of the signal. Without a clear answer: dark.
+ */
+export function markingLamina(signal: Float64Array, edge: CandidateRecipe['edge']): 'dark' | 'light' {
+  const steps = signal.map((value, row) => (row > 0 ? value - signal[row - 1] : NaN))
+  const skewness = edge === 'middle' ? skewnessOf(signal) : skewnessOf(steps) * (edge === 'top' ? 1 : -1)
+  return skewness > clearSkewness ? 'light' : 'dark'
+}
+
+/** Third standardised moment about zero, values cut off at three deviations so that a crack does not decide. */
+function skewnessOf(column: Float64Array): number {
+  const readable = column.filter((value) => Number.isFinite(value))
+  const deviation = Math.sqrt(readable.reduce((sum, value) => sum + value * value, 0) / readable.length)
+  if (!(deviation > 0)) return 0
+  const cubes = readable.reduce((sum, value) => sum + Math.max(-3, Math.min(3, value / deviation)) ** 3, 0)
+  return cubes / readable.length
 }
 
 /** Steepest rise on the young flank, or steepest fall on the old flank, of a peak; for the middle the steeper of both. */
@@ -110,34 +155,59 @@ function steepest(signal: Float64Array, peak: number, base: number, direction: -
   return { position: best + 0.5 + direction * (0.5 + offset), slope }
 }
 
-/** Share of lanes in which a peak of at least half the least prominence stands within a fifth of a layer. */
-function measureContinuity(
+/** The smoother of the lanes, a standard deviation as a share of a layer: lanes are noisier than the profile. */
+const laneSmoothing = 0.085
+/** A lane shows a peak that stands within this share of a layer, and at least these many pixels, of the candidate … */
+const laneReach = 0.2
+const leastLaneReach = 1.5
+/** … and has at least this share of the candidate's prominence. */
+const laneShare = 0.5
+
+/** Share of lanes that show the peak of each candidate. */
+function* measureContinuity(
   candidates: Candidates,
-  peaks: Peaks,
+  { index }: Peaks,
   profile: Profile,
   thickness: Float64Array,
   sign: number,
-) {
-  const { laneCount } = profile
+): Work<void> {
+  const { lanes, laneCount } = profile
   const rows = profile.intensity.length
+  const smooth = gaussianSmoother(
+    thickness.map((local) => Math.max(0.3, laneSmoothing * local)),
+    rows,
+  )
+  const column = new Float64Array(rows)
   for (let lane = 0; lane < laneCount; lane++) {
-    const column = new Float64Array(rows)
-    for (let row = 0; row < rows; row++) column[row] = sign * profile.lanes[row * laneCount + lane]
-    const smooth = gaussianSmooth(
-      column,
-      thickness.map((local) => Math.max(0.3, 0.085 * local)),
-    )
-    const found = findPeaks(smooth)
+    yield { stage: 'candidates', done: lane + 1, total: laneCount + 1 }
+    for (let row = 0; row < rows; row++) column[row] = sign * lanes[row * laneCount + lane]
+    const found = findPeaks(smooth(column))
     let next = 0
-    for (let i = 0; i < candidates.peak.length; i++) {
-      const row = peaks.index[i]
-      const reach = Math.max(1.5, 0.2 * thickness[row])
-      while (next < found.index.length && found.index[next] < row - reach) next++
+    for (let i = 0; i < index.length; i++) {
+      const reach = Math.max(leastLaneReach, laneReach * thickness[index[i]])
+      while (next < found.index.length && found.index[next] < index[i] - reach) next++
       let best = 0
-      for (let k = next; k < found.index.length && found.index[k] <= row + reach; k++) {
+      for (let k = next; k < found.index.length && found.index[k] <= index[i] + reach; k++) {
         best = Math.max(best, found.prominence[k])
       }
-      if (best >= 0.5 * candidates.contrast[i]) candidates.continuity[i] += 1 / laneCount
+      if (best >= laneShare * candidates.contrast[i]) candidates.continuity[i] += 1 / laneCount
     }
+  }
+}
+
+/** Rejects a recipe that makes no sense, with the field named. */
+export function checkCandidateRecipe(recipe: CandidateRecipe): void {
+  const field = 'recipe.candidates'
+  checkOneOf(`${field}.lamina`, recipe.lamina, ['dark', 'light', 'auto'])
+  checkOneOf(`${field}.edge`, recipe.edge, ['top', 'middle', 'base'])
+  checkWithin(`${field}.prominence`, recipe.prominence, 0, 1000)
+  const { distance } = recipe
+  if (distance !== null && !(typeof distance === 'number' && distance > 0 && distance <= 1e7)) {
+    throw new Fault(
+      'argument',
+      `${field}.distance`,
+      distance,
+      `${field}.distance must be more than 0 path pixels, or null to take it from the profile; it is ${describe(distance)}`,
+    )
   }
 }

@@ -1,5 +1,5 @@
-import { checkInteger, checkPositive } from '../check.ts'
-import { atRow, finiteRuns, type PerRow } from './runs.ts'
+import { checkInteger, checkPositive, checkSameLength, Fault } from '../check.ts'
+import { atRow, finiteRuns, type PerRow, type Run } from './runs.ts'
 
 /**
  * Weights of a Savitzky-Golay filter: the value (or derivative) at offset `at` of the polynomial of the given degree
@@ -40,53 +40,40 @@ export function savitzkyGolayWeights(length: number, degree: number, at = 0, der
 }
 
 /**
- * Savitzky-Golay smoothing over an odd window; the ends of every stretch follow the polynomial of its first or last full window.
- * A stretch between gaps that is shorter than the window is smoothed with the longest odd window it holds.
+ * Savitzky-Golay smoothing; the window, an odd number of rows, may change from row to row. The ends of every stretch follow
+ * the polynomial of its first or last full window; a stretch between gaps that is shorter than the window is smoothed over
+ * the longest odd window it holds, with a lower degree if need be. Gaps stay gaps (NaN).
  */
-export function savitzkyGolay(column: Float64Array, length: number, degree: number, derivative = 0): Float64Array {
-  checkInteger('smoothing length', length, 1)
-  if (length % 2 === 0) length++
+export function savitzkyGolay(column: Float64Array, length: PerRow, degree: number, derivative = 0): Float64Array {
   const smooth = new Float64Array(column.length).fill(NaN)
+  const known = new Map<string, Float64Array>()
   for (const { from, to } of finiteRuns(column)) {
-    const rows = to - from
-    const window = Math.min(length, rows % 2 === 1 ? rows : rows - 1)
-    if (window < 1) {
-      smooth.set(column.subarray(from, to), from)
-      continue
+    const longest = to - from - ((to - from + 1) % 2)
+    for (let row = from; row < to; row++) {
+      const wanted = atRow(length, row)
+      if (!Number.isInteger(wanted) || wanted < 1 || wanted % 2 === 0) {
+        throw new Fault(
+          'argument',
+          'smoothing length',
+          wanted,
+          `the window of a Savitzky-Golay filter must be an odd number of rows; it is ${wanted}`,
+        )
+      }
+      const window = Math.min(wanted, longest)
+      const start = Math.max(from, Math.min(to - window, row - (window - 1) / 2))
+      const at = row - start - (window - 1) / 2
+      const key = `${window} ${at}`
+      let weights = known.get(key)
+      if (!weights) {
+        weights = savitzkyGolayWeights(window, Math.min(degree, window - 1), at, derivative)
+        known.set(key, weights)
+      }
+      let sum = 0
+      for (let i = 0; i < window; i++) sum += weights[i] * column[start + i]
+      smooth[row] = sum
     }
-    savitzkyGolayRun(
-      column.subarray(from, to),
-      smooth.subarray(from, to),
-      window,
-      Math.min(degree, window - 1),
-      derivative,
-    )
   }
   return smooth
-}
-
-function savitzkyGolayRun(
-  run: Float64Array,
-  out: Float64Array,
-  window: number,
-  degree: number,
-  derivative: number,
-): void {
-  const half = (window - 1) / 2
-  const apply = (weights: Float64Array, start: number) => {
-    let sum = 0
-    for (let i = 0; i < window; i++) sum += weights[i] * run[start + i]
-    return sum
-  }
-  const centre = savitzkyGolayWeights(window, degree, 0, derivative)
-  for (let row = half; row < run.length - half; row++) out[row] = apply(centre, row - half)
-  for (let row = 0; row < Math.min(half, run.length); row++) {
-    out[row] = apply(savitzkyGolayWeights(window, degree, row - half, derivative), 0)
-  }
-  for (let row = Math.max(half, run.length - half); row < run.length; row++) {
-    const start = run.length - window
-    out[row] = apply(savitzkyGolayWeights(window, degree, row - start - half, derivative), start)
-  }
 }
 
 /** Half a Gaussian, [radius + 1], for a standard deviation in rows; cut off at four standard deviations. */
@@ -95,38 +82,66 @@ export function gaussianHalf(sigma: number): Float64Array {
   return Float64Array.from({ length: radius + 1 }, (_, k) => Math.exp(-0.5 * (k / sigma) ** 2))
 }
 
+/** Ratio of neighbouring kernels where the standard deviation changes from row to row. */
+const kernelRatio = 1.02
+
 /**
- * Gaussian smoothing; the standard deviation, in rows, may change from row to row (it is then rounded to 2 %).
- * Never looks across a gap: each stretch is smoothed by itself, weights renormalised at its ends.
+ * Gaussian smoothing of columns of so many rows; the standard deviation, in rows, may change from row to row (it is then
+ * rounded to 1 %). Never looks across a gap: each stretch is smoothed by itself, weights renormalised at its ends.
  */
-export function gaussianSmooth(column: Float64Array, sigma: PerRow): Float64Array {
-  const smooth = new Float64Array(column.length).fill(NaN)
-  const kernels = new Map<number, Float64Array>()
-  const kernelAt = (row: number): Float64Array => {
-    const wanted = checkPositive('smoothing length', atRow(sigma, row))
-    const step = Math.round(Math.log(wanted) / Math.log(1.02))
-    let kernel = kernels.get(step)
-    if (!kernel) kernels.set(step, (kernel = gaussianHalf(typeof sigma === 'number' ? sigma : 1.02 ** step)))
-    return kernel
-  }
-  for (const { from, to } of finiteRuns(column)) {
-    for (let row = from; row < to; row++) {
-      const kernel = kernelAt(row)
-      const radius = kernel.length - 1
-      let sum = column[row]
-      let weight = 1
-      const before = Math.min(radius, row - from)
-      const after = Math.min(radius, to - 1 - row)
-      for (let k = 1; k <= before; k++) {
-        sum += kernel[k] * column[row - k]
-        weight += kernel[k]
-      }
-      for (let k = 1; k <= after; k++) {
-        sum += kernel[k] * column[row + k]
-        weight += kernel[k]
-      }
-      smooth[row] = sum / weight
+export function gaussianSmoother(sigma: PerRow, rows: number): (column: Float64Array) => Float64Array {
+  const kernels: Float64Array[] = []
+  const kernelOf = new Int32Array(rows)
+  const steps = new Map<number, number>()
+  for (let row = 0; row < rows; row++) {
+    const wanted = atRow(sigma, row)
+    const step = typeof sigma === 'number' ? 0 : Math.round(Math.log(wanted) / Math.log(kernelRatio))
+    let kernel = steps.get(step)
+    if (kernel === undefined) {
+      checkPositive('smoothing length', wanted)
+      kernel = kernels.push(gaussianHalf(typeof sigma === 'number' ? sigma : kernelRatio ** step)) - 1
+      steps.set(step, kernel)
     }
+    kernelOf[row] = kernel
   }
-  return smooth
+  return (column) => {
+    checkSameLength('column', column, rows)
+    const smooth = new Float64Array(rows).fill(NaN)
+    for (const run of finiteRuns(column)) smoothRun(column, run, kernels, kernelOf, smooth)
+    return smooth
+  }
+}
+
+function smoothRun(
+  column: Float64Array,
+  { from, to }: Run,
+  kernels: Float64Array[],
+  kernelOf: Int32Array,
+  smooth: Float64Array,
+): void {
+  for (let row = from; row < to; row++) {
+    const kernel = kernels[kernelOf[row]]
+    const radius = kernel.length - 1
+    const both = Math.min(radius, row - from, to - 1 - row)
+    let sum = column[row]
+    let weight = 1
+    for (let k = 1; k <= both; k++) {
+      sum += kernel[k] * (column[row - k] + column[row + k])
+      weight += 2 * kernel[k]
+    }
+    for (let k = both + 1; k <= Math.min(radius, row - from); k++) {
+      sum += kernel[k] * column[row - k]
+      weight += kernel[k]
+    }
+    for (let k = both + 1; k <= Math.min(radius, to - 1 - row); k++) {
+      sum += kernel[k] * column[row + k]
+      weight += kernel[k]
+    }
+    smooth[row] = sum / weight
+  }
+}
+
+/** Gaussian smoothing of one column: see gaussianSmoother. */
+export function gaussianSmooth(column: Float64Array, sigma: PerRow): Float64Array {
+  return gaussianSmoother(sigma, column.length)(column)
 }
