@@ -1,8 +1,9 @@
-import { checkOneOf, checkWithin, describe, Fault } from '../check.ts'
+import { checkOneOf, checkWithin } from '../check.ts'
 import type { Work } from '../work.ts'
 import type { Detrended } from './detrend.ts'
 import { findPeaks, keepDistant, parabolaVertex, selectPeaks, type Peaks } from './peaks.ts'
 import type { Profile } from './profile.ts'
+import { checkLengthOrNull } from './recipeChecks.ts'
 import { gaussianSmoother } from './smoothing.ts'
 
 export interface CandidateRecipe {
@@ -201,13 +202,5 @@ export function checkCandidateRecipe(recipe: CandidateRecipe): void {
   checkOneOf(`${field}.lamina`, recipe.lamina, ['dark', 'light', 'auto'])
   checkOneOf(`${field}.edge`, recipe.edge, ['top', 'middle', 'base'])
   checkWithin(`${field}.prominence`, recipe.prominence, 0, 1000)
-  const { distance } = recipe
-  if (distance !== null && !(typeof distance === 'number' && distance > 0 && distance <= 1e7)) {
-    throw new Fault(
-      'argument',
-      `${field}.distance`,
-      distance,
-      `${field}.distance must be more than 0 path pixels, or null to take it from the profile; it is ${describe(distance)}`,
-    )
-  }
+  checkLengthOrNull(`${field}.distance`, recipe.distance, 0)
 }

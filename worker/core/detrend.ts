@@ -1,7 +1,8 @@
-import { checkOneOf, describe, Fault } from '../check.ts'
+import { checkOneOf } from '../check.ts'
 import type { Work } from '../work.ts'
 import { movingMean } from './movingWindow.ts'
 import type { Profile } from './profile.ts'
+import { checkFlag, checkLengthOrNull } from './recipeChecks.ts'
 import { gaussianSmooth, savitzkyGolay } from './smoothing.ts'
 import { trendOf, type TrendMethod } from './trend.ts'
 import { typicalThickness } from './typicalThickness.ts'
@@ -100,26 +101,7 @@ export function checkDetrendRecipe(recipe: DetrendRecipe): void {
   const field = 'recipe.detrend'
   checkOneOf(`${field}.method`, recipe.method, ['moving-median', 'moving-mean', 'loess', 'high-pass', 'none'])
   checkOneOf(`${field}.smoothing`, recipe.smoothing, ['savitzky-golay', 'gaussian', 'none'])
-  checkLength(`${field}.window`, recipe.window, 3)
-  checkLength(`${field}.smoothingLength`, recipe.smoothingLength, 0.5)
-  if (typeof recipe.standardise !== 'boolean') {
-    throw new Fault(
-      'argument',
-      `${field}.standardise`,
-      recipe.standardise,
-      `${field}.standardise must be true or false`,
-    )
-  }
-}
-
-const longestLength = 1e7
-
-function checkLength(field: string, value: number | null, least: number): void {
-  if (value === null || (typeof value === 'number' && value >= least && value <= longestLength)) return
-  throw new Fault(
-    'argument',
-    field,
-    value,
-    `${field} must be between ${least} and ${longestLength} path pixels, or null to take it from the profile; it is ${describe(value)}`,
-  )
+  checkLengthOrNull(`${field}.window`, recipe.window, 3)
+  checkLengthOrNull(`${field}.smoothingLength`, recipe.smoothingLength, 0.5)
+  checkFlag(`${field}.standardise`, recipe.standardise)
 }

@@ -3,6 +3,7 @@ import type { Samples, ScanWork } from '../work.ts'
 import { regionsOf } from './bands.ts'
 import { intensityReader, type Channel } from './intensity.ts'
 import { bucketMedian, trimmedMeanOf } from './quickselect.ts'
+import { checkFlag } from './recipeChecks.ts'
 import { evenCuts } from './runs.ts'
 import type { ScanShape } from './scan.ts'
 import { ribbonOf, type Strip } from './strip.ts'
@@ -108,10 +109,12 @@ function samplesOrFault(samples: Samples | undefined): Samples {
   return samples
 }
 
-function checkProfileRecipe(recipe: ProfileRecipe): void {
+/** Rejects a recipe that makes no sense, with the field named. */
+export function checkProfileRecipe(recipe: ProfileRecipe): void {
   checkOneOf('recipe.profile.channel', recipe.channel, ['luminance', 'lightness', 'red', 'green', 'blue'])
   checkOneOf('recipe.profile.across', recipe.across, ['median', 'mean', 'trimmed'])
-  checkInteger('recipe.profile.lanes', recipe.lanes, 1, 99)
+  checkFlag('recipe.profile.linear', recipe.linear)
+  checkInteger('recipe.profile.lanes', recipe.lanes, 1, 1000)
   checkWithin('recipe.profile.usableShare', recipe.usableShare, 0, 1)
 }
 
