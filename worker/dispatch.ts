@@ -4,7 +4,12 @@ import { compareCounts } from './core/counts.ts'
 import { buildChronology } from './core/chronology.ts'
 import { readCountTable } from './core/countTable.ts'
 import { parseCurve } from './core/curveFile.ts'
-import { dateCore } from './core/dating.ts'
+import { calibrate } from './core/calibrate.ts'
+import { coreWiggle } from './core/coreWiggle.ts'
+import { CurveShelf } from './core/curveShelf.ts'
+import { readDatesTable } from './core/datesTable.ts'
+import { coreSamples, coreYearsBetween, dateCore } from './core/dating.ts'
+import { lead210Ages } from './core/lead210.ts'
 import { layersOfCount } from './core/layersOfCount.ts'
 import { paintSamples, stretchedDisplay } from './core/display.ts'
 import { runCount } from './core/ladder.ts'
@@ -75,6 +80,13 @@ const handlers: { [K in JobKind]: Handler<K> } = {
   chronology: (request) => buildChronology(request),
   layersOfCount: (request) => layersOfCount(request),
   date: (request, circumstances) => drive(dateCore(request), circumstances),
+  yearsBetween: ({ dating, upper, lower }, circumstances) =>
+    drive(coreYearsBetween(dating, upper, lower), circumstances),
+  sampleYears: ({ dating, samples, seed }, circumstances) => drive(coreSamples(dating, samples, seed), circumstances),
+  wiggle: (request) => coreWiggle(request),
+  calibrate: ({ date, curves, curve }) => calibrate(date, new CurveShelf(curves).curve(curve ?? undefined)),
+  datesTable: ({ text, name }) => readDatesTable(text, name),
+  lead210: (request) => lead210Ages(request),
   curve: ({ text, name, sha256 }) => parseCurve(text, { name, sha256 }),
   thickness: ({ thickness, window }) => ({
     summary: thicknessSummary(thickness),

@@ -1,9 +1,14 @@
+import type { C14Measurement, Calibration } from './core/calibrate.ts'
 import type { Candidates } from './core/candidates.ts'
 import type { Chronology, ChronologyRequest } from './core/chronology.ts'
 import type { Agreement, AgreementOptions } from './core/counts.ts'
 import type { CountedLayers } from './core/countedLayers.ts'
 import type { Curve } from './core/curve.ts'
+import type { CoreWiggle } from './core/coreWiggle.ts'
+import type { DatesTable } from './core/datesTable.ts'
 import type { DatingRequest, DatingResult } from './core/dating.ts'
+import type { LeadAges, LeadProfile } from './core/lead210.ts'
+import type { WholeYears } from './core/stepLaws.ts'
 import type { CountOfSection } from './core/layersOfCount.ts'
 import type { CountColumns, CountTable } from './core/countTable.ts'
 import type { CounterMarks } from './core/counterMarks.ts'
@@ -56,6 +61,18 @@ export interface Jobs {
   layersOfCount: { request: CountOfSection; reply: CountedLayers }
   /** Exact calendar ages of every row of counted layers, given all dates. */
   date: { request: DatingRequest; reply: DatingResult }
+  /** The years between two rows of counted layers, given all dates. */
+  yearsBetween: { request: { dating: DatingRequest; upper: number; lower: number }; reply: WholeYears }
+  /** Whole chronologies drawn from the posterior: astronomical years, [samples x rows]. */
+  sampleYears: { request: { dating: DatingRequest; samples: number; seed: number }; reply: Int32Array }
+  /** The radiocarbon dates of a core on the curve, the count taken as exact. */
+  wiggle: { request: DatingRequest; reply: CoreWiggle }
+  /** One radiocarbon date over the years of the chosen curve. */
+  calibrate: { request: { date: C14Measurement; curves: Curve[]; curve: string | null }; reply: Calibration }
+  /** A table of dates read from CSV text, with every bad row named. */
+  datesTable: { request: { text: string; name: string }; reply: DatesTable }
+  /** Ages of a 210Pb profile by constant rate of supply. */
+  lead210: { request: LeadProfile; reply: LeadAges }
   /** A calibration curve from the text of its file. */
   curve: { request: { text: string; name: string; sha256: string }; reply: Curve }
   /** Figures and running mean of a thickness series. */

@@ -11,7 +11,10 @@ import { anchorYear, dateLikelihood } from './dates.ts'
 import type { CoreDate, DateLikelihood } from './dates.ts'
 import { calendarAges, latticeDefaults } from './lattice.ts'
 import type { DatedChronology, LatticeOptions } from './lattice.ts'
+import { yearsBetweenRows } from './latticeBetween.ts'
+import { sampleYears } from './latticeSamples.ts'
 import { SamplePlaces } from './samplePlace.ts'
+import type { WholeYears } from './stepLaws.ts'
 
 /** A counted core and all that ties it to the calendar. */
 export interface DatingRequest {
@@ -75,14 +78,32 @@ export function prepareDating(request: DatingRequest): PreparedDating {
   return { chain, dates, curves: [...used.values()], problems }
 }
 
+/** The request made ready; a date that cannot be used is a Fault. */
+function preparedOrRefused(request: DatingRequest): PreparedDating {
+  const prepared = prepareDating(request)
+  if (prepared.problems.length > 0) {
+    const words = prepared.problems.map(({ date, message }) => `${request.dates[date].id}: ${message}`).join('; ')
+    throw new Fault('argument', 'dates', prepared.problems.length, words)
+  }
+  return prepared
+}
+
 /** Dates a core. A date that cannot be used is a Fault: leave it out first. */
 export function* dateCore(request: DatingRequest): Work<DatingResult> {
-  const { chain, dates, curves, problems } = prepareDating(request)
-  if (problems.length > 0) {
-    const words = problems.map(({ date, message }) => `${request.dates[date].id}: ${message}`).join('; ')
-    throw new Fault('argument', 'dates', problems.length, words)
-  }
+  const { chain, dates, curves } = preparedOrRefused(request)
   const lattice = { ...latticeDefaults, ...request.lattice }
   const chronology = yield* calendarAges(chain, dates, lattice)
   return { ...chronology, crossCheck: crossCheck(chain, dates, chronology, lattice.biasSd), curves }
+}
+
+/** The distribution of the years between two rows of the layers, given everything; see yearsBetweenRows. */
+export function* coreYearsBetween(request: DatingRequest, upper: number, lower: number): Work<WholeYears> {
+  const { chain, dates } = preparedOrRefused(request)
+  return yield* yearsBetweenRows(chain, dates, upper, lower, { ...latticeDefaults, ...request.lattice })
+}
+
+/** Whole chronologies drawn from the posterior, [samples x rows]; see sampleYears. */
+export function* coreSamples(request: DatingRequest, samples: number, seed: number): Work<Int32Array> {
+  const { chain, dates } = preparedOrRefused(request)
+  return yield* sampleYears(chain, dates, samples, seed, { ...latticeDefaults, ...request.lattice })
 }
