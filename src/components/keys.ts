@@ -112,7 +112,7 @@ export const keys: readonly Key[] = [
     does: 'least certain place first, then the next',
     group: 'Move',
     steps: bench,
-    act: ({ session }) => session.counting.toMostInformative(),
+    act: ({ session }) => toMostInformative(session),
   },
 
   {
@@ -375,6 +375,11 @@ export function pressedKey(event: KeyboardEvent, session: Session, core: CoreSta
 
 function onBench({ target }: KeyboardEvent): boolean {
   return target instanceof Element && target.closest('[data-bench]') !== null
+}
+
+/** To the least certain place, with the focus on the bench: Enter there is to confirm, not to press a button again. */
+export function toMostInformative(session: Session): void {
+  if (session.counting.toMostInformative()) document.querySelector<HTMLElement>('[data-bench]')?.focus()
 }
 
 /** Zooming by key keeps what is looked at: the pointer's place while it is over the core, else the middle. */

@@ -9,6 +9,8 @@ import type { WorkerClient } from './workerClient.ts'
 export interface NamedCount {
   name: string
   count: Count
+  /** The stretch that was looked at, path pixels; null: the whole transect. */
+  range: { from: number; to: number } | null
 }
 
 /** The counts of the transect at hand set against one another. */
@@ -17,6 +19,8 @@ export class Comparison {
   #counts: () => readonly NamedCount[]
   result = $state.raw<Agreement | null>(null)
   failure = $state('')
+  /** False while the counts have changed and are being compared anew. */
+  current = $state(false)
 
   constructor(client: WorkerClient, counts: () => readonly NamedCount[]) {
     this.#client = client
@@ -25,8 +29,9 @@ export class Comparison {
 
   /** Compares the counts as they stand; called whenever they may have changed. */
   async follow(): Promise<void> {
-    const counts = this.#counts().map(({ name, count }) => ({ name, ...countedBoundaries(count.layers), range: null }))
+    const counts = this.#counts().map(({ name, count, range }) => ({ name, ...countedBoundaries(count.layers), range }))
     this.failure = ''
+    this.current = false
     if (counts.length < 2) {
       this.#client.cancel('agreement')
       this.result = null
@@ -34,6 +39,7 @@ export class Comparison {
     }
     try {
       this.result = await this.#client.run('agreement', { counts }, { slot: 'agreement' })
+      this.current = true
     } catch (error) {
       if (error instanceof JobCancelled) return
       this.result = null

@@ -32,7 +32,7 @@ export const steps = [
 ] as const
 export type StepId = (typeof steps)[number]['id']
 
-/** A blind count checked to this share of its transect is as good as done. */
+/** A count checked to this share of its transect is as good as done. */
 const finishedShare = 0.95
 
 /** Everything that runs while the page is open, and which section, transect and count are at hand. */
@@ -71,6 +71,7 @@ export class Session {
     this.settling = new Settling(this.workbench, this.comparison, this.counting, () => ({
       transect: this.transect?.id ?? null,
       agreed: this.agreed,
+      choose: (count) => this.chooseCount(count),
     }))
     this.dating = new Dating(client, () => this.datingSubject)
     this.autosave.onFailure = (words) => this.notices.trouble(words)
@@ -81,13 +82,21 @@ export class Session {
     return sections.find(({ id }) => id === this.#sectionId) ?? sections.at(0) ?? null
   })
   scan = $derived.by(() => this.desk.get(this.section?.scan.sha256))
-  /** Counts of the section at hand, oldest first. */
-  counts: readonly Count[] = $derived.by(() => {
-    const { project } = this.workbench
-    const own = new Set(project.transects.filter(({ section }) => section === this.section?.id).map(({ id }) => id))
-    return project.counts.filter(({ transect }) => own.has(transect))
+  /** Ids of the transects of the section at hand. */
+  #own = $derived.by(() => {
+    const { transects } = this.workbench.project
+    return new Set(transects.filter(({ section }) => section === this.section?.id).map(({ id }) => id))
   })
-  count: Count | null = $derived(this.counts.find(({ id }) => id === this.#countId) ?? this.counts.at(-1) ?? null)
+  /** Counts of the section at hand, oldest first. */
+  counts: readonly Count[] = $derived.by(() =>
+    this.workbench.project.counts.filter(({ transect }) => this.#own.has(transect)),
+  )
+  count: Count | null = $derived.by(() => {
+    if (!this.workbench.past) return this.#chosenOf(this.counts)
+    // Looking back shows the same count as it was, never another in its stead: it might be one not to be seen.
+    const now = this.#chosenOf(this.workbench.state.project.counts.filter(({ transect }) => this.#own.has(transect)))
+    return this.counts.find(({ id }) => id === now?.id) ?? null
+  })
   transect: SectionTransect | null = $derived.by(() => {
     const { transects } = this.workbench.project
     const own = transects.filter(({ section }) => section === this.section?.id)
@@ -115,7 +124,7 @@ export class Session {
   sealed: boolean = $derived.by(() => {
     const { count, transect } = this
     if (!count?.blind || !transect || this.#opened.has(count.id)) return false
-    return count.checkedTo < finishedShare * pathLength(transect.points)
+    return this.#rangeOf(count) !== null
   })
   /** Notes that may be seen beside the count at hand. */
   notes: readonly Note[] = $derived.by(() => {
@@ -130,7 +139,7 @@ export class Session {
     if (this.sealed) return []
     return this.counted
       .filter(({ transect }) => transect === this.transect?.id)
-      .map((count) => ({ name: this.countName(count), count }))
+      .map((count) => ({ name: this.countName(count), count, range: this.#rangeOf(count) }))
   })
   /** Calendar year of the youngest counted varve; null where the count floats. */
   anchorYear: number | null = $derived.by(() => {
@@ -138,18 +147,31 @@ export class Session {
     if (coringYear === null || !topIntact || (this.section?.depthTop ?? 0) > 0) return null
     return coringYear - (topYearOpen ? 1 : 0)
   })
+  /** What three or more counts together say of every site: the counter model's years, which ages rest on by default. */
+  counterModel = $derived.by(() => {
+    const { result, current } = this.comparison
+    return current && result?.latent && result.totals.length >= 3
+      ? { sites: result.alignment.position, ...result.latent }
+      : null
+  })
   chronologyRequest: ChronologyRequest | null = $derived.by(() => {
     const { count, section } = this
     if (!count || !section || count.layers.position.length === 0) return null
     const repeats = this.counted.filter(({ transect }) => transect === count.transect)
-    const convention = this.chronology.chosen ?? (repeats.length > 1 ? 'repeat-counts' : 'half-layer')
+    const model = this.counterModel
+    const sites = model && { position: model.sites, yearsTo: model.yearsTo, sdTo: model.sdTo }
+    const usual = sites ? 'sites' : repeats.length > 1 ? 'repeat-counts' : 'half-layer'
+    const chosen = this.chronology.chosen ?? usual
+    const possible = chosen === 'sites' ? sites !== null : chosen !== 'repeat-counts' || repeats.length > 1
     return {
       count: countedBoundaries(count.layers),
       repeats: repeats.map(({ layers }) => countedBoundaries(layers)),
       spans: this.spans.map(({ from, to, kind }) => ({ from, to, kind })),
       mmPerPx: section.scale?.mmPerPx ?? null,
       depthTop: section.depthTop,
-      convention: repeats.length > 1 ? convention : 'half-layer',
+      sites,
+      systematicSd: this.dating.biasSd,
+      convention: possible ? chosen : usual,
       anchorYear: this.anchorYear,
     }
   })
@@ -157,11 +179,9 @@ export class Session {
   datingSubject: DatingSubject | null = $derived.by(() => {
     const { count, section } = this
     if (!count || !section?.scale) return null
-    const { position, doubtful } = countedBoundaries(count.layers)
     return {
       count: {
-        position,
-        probability: Float64Array.from(doubtful, (inDoubt) => (inDoubt ? 0.5 : 1)),
+        ...this.#yearSites(count),
         spans: this.spans.map(({ from, to, kind }) => ({ from, to, kind })),
         mmPerPx: section.scale.mmPerPx,
         depthTop: section.depthTop,
@@ -196,6 +216,22 @@ export class Session {
     }
   }
 
+  /** Where years may end and how likely each is: by the counter model where there are counts enough, else (and in an agreed count) by the count's own doubts. */
+  #yearSites(count: Count): { position: Float64Array; probability: Float64Array } {
+    const model = this.counterModel
+    if (model && count.id !== this.agreedCount?.id) {
+      const outside = (place: number) =>
+        !this.spans.some(({ kind, from, to }) => kind !== 'hiatus' && place > from && place < to)
+      const kept = [...model.sites.keys()].filter((site) => outside(model.sites[site]))
+      return {
+        position: Float64Array.from(kept, (site) => model.sites[site]),
+        probability: Float64Array.from(kept, (site) => model.probability[site]),
+      }
+    }
+    const { position, doubtful } = countedBoundaries(count.layers)
+    return { position, probability: Float64Array.from(doubtful, (inDoubt) => (inDoubt ? 0.5 : 1)) }
+  }
+
   choose(section: string): void {
     this.#sectionId = section
     this.#countId = ''
@@ -222,12 +258,24 @@ export class Session {
   /** Whoever's count is at hand is at the bench. */
   #takeAuthor(): void {
     const counter = this.workbench.project.counters.find(({ id }) => id === this.count?.counter)
-    if (counter) this.workbench.author = counter.name
+    // Nobody is called Agreed: who settles differences stays the author.
+    if (counter && counter.name !== agreedName) this.workbench.author = counter.name
   }
 
   /** Ends the blindness of the count at hand: its counter wants to see the others. */
   unseal(): void {
     if (this.count) this.#opened = new Set([...this.#opened, this.count.id])
+  }
+
+  #chosenOf(counts: readonly Count[]): Count | null {
+    return counts.find(({ id }) => id === this.#countId) ?? counts.at(-1) ?? null
+  }
+
+  /** How far a count has come, path pixels; null once it has come to the end of its transect. */
+  #rangeOf(count: Count): { from: number; to: number } | null {
+    const transect = this.workbench.project.transects.find(({ id }) => id === count.transect)
+    if (!transect || count.checkedTo >= finishedShare * pathLength(transect.points)) return null
+    return { from: 0, to: Math.max(count.checkedTo, count.layers.position.at(-1) ?? 0) }
   }
 
   #isAgreed(count: Count): boolean {

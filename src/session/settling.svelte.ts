@@ -1,4 +1,4 @@
-import { certain } from '../../worker/core/alignment.ts'
+import { certain, unseen } from '../../worker/core/alignment.ts'
 import { beginAgreed, settleSite } from '../commands/settleSites.ts'
 import type { AgreedSite } from '../commands/settleSites.ts'
 import type { Mark } from '../document/layerSet.ts'
@@ -15,6 +15,8 @@ interface Subject {
   transect: string | null
   /** The agreed count of the transect; null: none was begun. */
   agreed: Count | null
+  /** Takes a count to hand. */
+  choose: (count: string) => void
 }
 
 /** Walking through the places where counts differ, and settling each into an agreed count with a reason. */
@@ -73,10 +75,10 @@ export class Settling {
     return next !== undefined
   }
 
-  /** Begins the agreed count with every site that all counts hold: certain where all are certain of it. */
+  /** Begins the agreed count with every site that all counts which came so far hold: certain where all of them are. */
   begin(): void {
     const { result } = this.#comparison
-    const { transect } = this.#subject()
+    const { transect, choose } = this.#subject()
     if (!result || transect === null) return
     const { position, label, counters } = result.alignment
     const disputed = new Set(result.disputed)
@@ -84,9 +86,16 @@ export class Settling {
     position.forEach((place, site) => {
       if (disputed.has(site)) return
       const labels = label.subarray(site * counters.length, (site + 1) * counters.length)
-      sites.push({ position: place, mark: labels.every((one) => one === certain) ? 'certain' : 'doubtful' })
+      sites.push({
+        position: place,
+        mark: labels.every((one) => one === certain || one === unseen) ? 'certain' : 'doubtful',
+      })
     })
-    if (this.#workbench.dispatch(beginAgreed(this.#workbench.state, { transect, sites }))) this.toNext(1)
+    if (!this.#workbench.dispatch(beginAgreed(this.#workbench.state, { transect, sites }))) return
+    // At hand, so that the column of years shows what is agreed while differences are settled.
+    const made = this.#workbench.project.counts.at(-1)
+    if (made) choose(made.id)
+    this.toNext(1)
   }
 
   /** Settles the difference under the cursor and goes to the next open one; without a reason the reason is asked for. */
