@@ -63,33 +63,63 @@ export async function makeLevel(
 /** Averages squares of factor x factor pixels of a band whose rows lie in order. */
 function shrinkBand(band: Samples, factor: number, output: Uint8Array | Uint16Array): void {
   const [height, width, channels] = band.shape
-  const columns = Math.ceil(width / factor)
-  const sums = new Float64Array(columns * channels)
-  for (let row = 0, to = 0; row * factor < height; row++) {
-    const last = Math.min(height, (row + 1) * factor)
-    sums.fill(0)
-    for (let y = row * factor; y < last; y++) addRow(band.data, y * width * channels, width, channels, factor, sums)
-    for (let column = 0, i = 0; column < columns; column++) {
-      const count = (last - row * factor) * Math.min(factor, width - column * factor)
-      for (let channel = 0; channel < channels; channel++) output[to++] = Math.floor(sums[i++] / count + 0.5)
-    }
+  const rowLength = Math.ceil(width / factor) * channels
+  const halved = factor === 2 && width > 1
+  const sums = new Uint32Array(rowLength)
+  for (let row = 0; row * factor < height; row++) {
+    const target = output.subarray(row * rowLength, (row + 1) * rowLength)
+    const first = row * factor
+    const last = Math.min(height, first + factor)
+    // Halving full squares is nearly all of the work; its loop is written for it.
+    const done = halved && last - first === 2 ? halveRows(band.data, first, width, channels, target) : 0
+    if (done < rowLength) averageRows(band, first, last, factor, done, sums, target)
   }
 }
 
-/** Adds each pixel of a row to the sum of its square. */
-function addRow(
+/** Means of the full squares of two rows, rounded to the nearest; returns how many samples of the row they make. */
+function halveRows(
   data: Uint8Array | Uint16Array,
-  start: number,
+  row: number,
   width: number,
   channels: number,
-  factor: number,
-  sums: Float64Array,
-): void {
-  let from = start
-  for (let x = 0, to = 0; x < width; x += factor, to += channels) {
-    const end = from + Math.min(factor, width - x) * channels
-    while (from < end) {
-      for (let channel = 0; channel < channels; channel++) sums[to + channel] += data[from++]
+  target: Uint8Array | Uint16Array,
+): number {
+  const full = (width >> 1) * channels
+  let upper = row * width * channels
+  let lower = upper + width * channels
+  for (let to = 0; to < full;) {
+    for (let channel = 0; channel < channels; channel++, upper++, lower++) {
+      target[to++] = (data[upper] + data[upper + channels] + data[lower] + data[lower + channels] + 2) >> 2
     }
+    upper += channels
+    lower += channels
+  }
+  return full
+}
+
+/** Means of squares of any size, cut ones too, from sample `from` of the target row on. */
+function averageRows(
+  band: Samples,
+  first: number,
+  last: number,
+  factor: number,
+  from: number,
+  sums: Uint32Array,
+  target: Uint8Array | Uint16Array,
+): void {
+  const [, width, channels] = band.shape
+  const { data } = band
+  sums.fill(0)
+  for (let y = first; y < last; y++) {
+    let at = (y * width + (from / channels) * factor) * channels
+    for (let to = from; to < target.length; to += channels) {
+      const end = at + Math.min(factor, width - (to / channels) * factor) * channels
+      while (at < end) for (let channel = 0; channel < channels; channel++) sums[to + channel] += data[at++]
+    }
+  }
+  for (let to = from; to < target.length; to++) {
+    const columns = Math.min(factor, width - Math.floor(to / channels) * factor)
+    const count = (last - first) * columns
+    target[to] = Math.floor(sums[to] / count + 0.5)
   }
 }

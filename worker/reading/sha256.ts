@@ -1,20 +1,11 @@
 import type { Progress } from '../work.ts'
 import type { ByteSource } from './scanFile.ts'
+import { roundConstants } from './sha256Constants.ts'
+import { wasmCompressor } from './sha256Wasm.ts'
+import type { WasmCompressor } from './sha256Wasm.ts'
 
 /** Bytes hashed between two turns of the event loop: about 15 ms of work. */
 const sliceBytes = 4 << 20
-
-/** First 32 bits of the fractional parts of the cube roots of the first 64 primes (FIPS 180-4, section 4.2.2). */
-const roundConstants = Int32Array.from([
-  0x428a2f98, 0x71374491, 0xb5c0fbcf, 0xe9b5dba5, 0x3956c25b, 0x59f111f1, 0x923f82a4, 0xab1c5ed5, 0xd807aa98,
-  0x12835b01, 0x243185be, 0x550c7dc3, 0x72be5d74, 0x80deb1fe, 0x9bdc06a7, 0xc19bf174, 0xe49b69c1, 0xefbe4786,
-  0x0fc19dc6, 0x240ca1cc, 0x2de92c6f, 0x4a7484aa, 0x5cb0a9dc, 0x76f988da, 0x983e5152, 0xa831c66d, 0xb00327c8,
-  0xbf597fc7, 0xc6e00bf3, 0xd5a79147, 0x06ca6351, 0x14292967, 0x27b70a85, 0x2e1b2138, 0x4d2c6dfc, 0x53380d13,
-  0x650a7354, 0x766a0abb, 0x81c2c92e, 0x92722c85, 0xa2bfe8a1, 0xa81a664b, 0xc24b8b70, 0xc76c51a3, 0xd192e819,
-  0xd6990624, 0xf40e3585, 0x106aa070, 0x19a4c116, 0x1e376c08, 0x2748774c, 0x34b0bcb5, 0x391c0cb3, 0x4ed8aa4a,
-  0x5b9cca4f, 0x682e6ff3, 0x748f82ee, 0x78a5636f, 0x84c87814, 0x8cc70208, 0x90befffa, 0xa4506ceb, 0xbef9a3f7,
-  0xc67178f2,
-])
 
 /**
  * SHA-256 (FIPS 180-4) fed piece by piece: the platform's own digest wants the whole message in memory at once,
@@ -28,6 +19,13 @@ export class Sha256 {
   private readonly pending = new Uint8Array(64)
   private pendingLength = 0
   private total = 0
+  private readonly fast: WasmCompressor | null
+
+  /** Without `fast`, by plain JavaScript, as where WebAssembly is switched off. */
+  constructor(fast = true) {
+    this.fast = fast ? wasmCompressor() : null
+    this.fast?.state.set(this.state)
+  }
 
   update(bytes: Uint8Array): this {
     this.total += bytes.length
@@ -37,11 +35,11 @@ export class Sha256 {
       this.pending.set(bytes.subarray(0, at), this.pendingLength)
       this.pendingLength += at
       if (this.pendingLength < 64) return this
-      compress(this.state, this.schedule, this.pending, 0, 64)
+      this.compress(this.pending, 0, 64)
       this.pendingLength = 0
     }
     const whole = at + ((bytes.length - at) & ~63)
-    compress(this.state, this.schedule, bytes, at, whole)
+    this.compress(bytes, at, whole)
     this.pending.set(bytes.subarray(whole))
     this.pendingLength = bytes.length - whole
     return this
@@ -55,8 +53,21 @@ export class Sha256 {
     const view = new DataView(tail.buffer)
     view.setUint32(tail.length - 8, Math.floor(this.total / 0x20000000))
     view.setUint32(tail.length - 4, (this.total << 3) >>> 0)
-    compress(this.state, this.schedule, tail, 0, tail.length)
-    return Array.from(this.state, (word) => (word >>> 0).toString(16).padStart(8, '0')).join('')
+    this.compress(tail, 0, tail.length)
+    return Array.from(this.fast?.state ?? this.state, (word) => (word >>> 0).toString(16).padStart(8, '0')).join('')
+  }
+
+  private compress(bytes: Uint8Array, from: number, to: number): void {
+    const { fast } = this
+    if (!fast) {
+      compress(this.state, this.schedule, bytes, from, to)
+      return
+    }
+    for (let at = from; at < to; at += fast.input.length) {
+      const part = bytes.subarray(at, Math.min(to, at + fast.input.length))
+      fast.input.set(part)
+      fast.compress(part.length)
+    }
   }
 }
 
