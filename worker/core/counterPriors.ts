@@ -29,6 +29,6 @@ export const defaultCounterPriors: CounterPriors = {
   doubtfulIfFalse: [1, 1],
   spacingSd: 1,
   qualitySd: 1,
-  claritySd: 0.7,
+  claritySd: 0.5,
   doubtFollows: { mean: 0.3, sd: 0.5 },
 }

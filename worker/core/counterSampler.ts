@@ -69,8 +69,9 @@ export class CounterSampler {
   private readonly yearsIn: Float64Array
   private readonly missed: Float64Array
   private readonly doubted: Float64Array
-  /** False boundaries by bin, by counter and quality, and doubtful ones by counter. */
+  /** False boundaries by bin, by group, by counter and quality, and doubtful ones by counter. */
   private readonly falseInBin: Float64Array
+  private readonly falseInGroup: Float64Array
   private readonly falseMarks: Float64Array
   private readonly falseDoubted: Float64Array
   private readonly missChance: Float64Array
@@ -102,6 +103,7 @@ export class CounterSampler {
     this.missed = new Float64Array(counters * this.strata)
     this.doubted = new Float64Array(counters * this.strata)
     this.falseInBin = new Float64Array(bins)
+    this.falseInGroup = new Float64Array(groups.length)
     this.falseMarks = new Float64Array(counters * this.qualities)
     this.falseDoubted = new Float64Array(counters)
     this.missChance = new Float64Array(counters * this.strata)
@@ -188,7 +190,15 @@ export class CounterSampler {
 
   /** Draws, cell by cell, how many of its sites are years and of which clarity; the others are false boundaries. */
   private classifySites(): void {
-    for (const tally of [this.yearsIn, this.missed, this.doubted, this.falseInBin, this.falseMarks, this.falseDoubted])
+    for (const tally of [
+      this.yearsIn,
+      this.missed,
+      this.doubted,
+      this.falseInBin,
+      this.falseInGroup,
+      this.falseMarks,
+      this.falseDoubted,
+    ])
       tally.fill(0)
     const weight = new Float64Array(nodes)
     for (const [c, cell] of this.cells.cells.entries()) {
@@ -244,6 +254,7 @@ export class CounterSampler {
   private tallyFalse({ label, group, bin }: Cell, sites: number): void {
     if (sites === 0) return
     this.falseInBin[bin] += sites
+    this.falseInGroup[group] += sites
     for (let k = 0; k < this.k; k++) {
       if (label[k] === absent || label[k] === unseen) continue
       this.falseMarks[k * this.qualities + this.cells.groups[group].quality] += sites
@@ -278,21 +289,34 @@ export class CounterSampler {
       total += this.placeShare[bin]
     }
     for (let bin = 0; bin < this.placeShare.length; bin++) this.placeShare[bin] /= total
+    const unmarked = this.unmarkedPlaces()
     for (let k = 0; k < this.k; k++) {
       let marks = 0
       for (let q = 0; q < this.qualities; q++) {
         const wrong = this.falseMarks[k * this.qualities + q]
-        const places = this.cells.groups.reduce(
-          (sum, one) => sum + (one.quality === q && one.seenBy[k] ? one.places : 0),
-          0,
+        let places = 0
+        for (const [g, { quality, seenBy }] of this.cells.groups.entries()) {
+          if (quality === q && seenBy[k]) places += unmarked[g] + this.falseInGroup[g]
+        }
+        this.falseRate[k * this.qualities + q] = drawBeta(
+          random,
+          priors.false[0] + wrong,
+          priors.false[1] + places - wrong,
         )
-        const spared = Math.max(0, places - wrong)
-        this.falseRate[k * this.qualities + q] = drawBeta(random, priors.false[0] + wrong, priors.false[1] + spared)
         marks += wrong
       }
       const [doubtA, doubtB] = priors.doubtfulIfFalse
       this.falseDoubt[k] = drawBeta(random, doubtA + this.falseDoubted[k], doubtB + marks - this.falseDoubted[k])
     }
+  }
+
+  /** Places that tempted no one, [groups]; there are as many places as years counted, give or take a Poisson number. */
+  private unmarkedPlaces(): number[] {
+    return this.cells.groups.map(({ places, quality, seenBy }) => {
+      let spared = 1
+      for (let k = 0; k < this.k; k++) if (seenBy[k]) spared *= 1 - this.falseRate[k * this.qualities + quality]
+      return drawPoisson(this.random, places * spared)
+    })
   }
 
   private accept(difference: number, size: StepSize): boolean {

@@ -105,22 +105,42 @@ function estimateOf(values: Float64Array): Estimate {
   return { mean: momentsOf(values).mean, interval95: [at(0.025), at(0.975)] }
 }
 
+/** A whole number with more than this left to its side, itself included, always belongs to the interval. */
+const mostLeftOut = 0.05
+
 /**
- * Central 95 % interval of whole numbers, each spread evenly over half a unit on both sides before the quantiles are
- * taken. Intervals that end on whole numbers would hold 95 % or more, and so too much on average; of these 95 % hold the
- * truth over many cores (the mid-P convention; Lancaster 1961, JASA 56, 223).
+ * Central 95 % interval of whole numbers that holds the truth in 95 % of cores, not in 95 % or more as intervals that end
+ * on whole numbers do. A number n at the rim has the tail T(n - 1) without it and T(n) with it; tails fall about
+ * geometrically, so on average 2.5 % are left out if n is left out when the logarithmic mean of the two is below 2.5 % (the
+ * arithmetic mean would give the mid-P rule of Lancaster 1961, JASA 56, 223, which leaves out too little where tails are
+ * steep). The ends lie where that mean, drawn log-linearly between whole numbers, passes 2.5 %.
  */
 export function wholeNumberInterval(draws: Float64Array): [number, number] {
-  const sorted = draws.toSorted()
-  const quantile = (p: number): number => {
-    const rank = p * sorted.length
-    const value = sorted[Math.min(sorted.length - 1, Math.floor(rank))]
-    const first = sorted.indexOf(value)
-    const after = sorted.lastIndexOf(value) + 1
-    return Math.max(0, value - 0.5 + (rank - first) / (after - first))
-  }
-  return [quantile(0.025), quantile(0.975)]
+  const low = lowerEnd(draws)
+  return [low, -lowerEnd(draws.map((n) => -n))]
 }
+
+function lowerEnd(draws: Float64Array): number {
+  const sorted = draws.toSorted()
+  let before = NaN
+  for (let end = 0, tail = 0; end < sorted.length;) {
+    const n = sorted[end]
+    const without = tail
+    while (end < sorted.length && sorted[end] === n) end++
+    tail = end / sorted.length
+    const mean = logMean(Math.max(without, 0.5 / sorted.length), tail)
+    if (mean >= 0.025 || tail > mostLeftOut) {
+      // Between this number, the first inside, and the one above it in the row, the last outside.
+      const share = Math.log(0.025 / before) / Math.log(Math.max(mean, 0.025) / before)
+      return Number.isNaN(before) ? n - 0.5 : n - 1 + Math.min(1, share)
+    }
+    before = mean
+  }
+  return sorted[sorted.length - 1]
+}
+
+/** (b - a) / log(b / a). */
+const logMean = (a: number, b: number) => (a === b ? a : (b - a) / Math.log(b / a))
 
 /** 95 % interval of years times a log-normal factor of median 1, over all draws. */
 function biasedInterval(draws: Float64Array, sd: number): [number, number] {
@@ -182,7 +202,10 @@ function downcore(
   return { yearsTo, sdTo }
 }
 
-/** Years between two sites, `from` and up to but without `to`, as a mixture of normals over the kept draws, 1/12 for whole numbers. */
+/**
+ * Years between two sites, `from` and up to but without `to`, as a mixture of normals over the kept draws, none narrower
+ * than a whole number is wide (variance 1/12).
+ */
 export function stretchYears(
   { cellOfSite, cells }: CounterCells,
   draws: CounterDraws,
@@ -206,7 +229,8 @@ export function stretchYears(
   const years = parts.reduce((sum, { mean }) => sum + mean, 0) / parts.length
   const variance = parts.reduce((sum, part) => sum + part.variance + (part.mean - years) ** 2, 0) / parts.length
   const below = (x: number) =>
-    parts.reduce((sum, part) => sum + normalCdf((x - part.mean) / Math.sqrt(part.variance + 1 / 12)), 0) / parts.length
+    parts.reduce((sum, part) => sum + normalCdf((x - part.mean) / Math.sqrt(Math.max(part.variance, 1 / 12))), 0) /
+    parts.length
   const reach = 10 * Math.sqrt(variance + 1)
   const quantile = (p: number) => Math.max(0, rootOf(below, p, years - reach, years + reach))
   return { years, sd: Math.sqrt(variance), years95: [quantile(0.025), quantile(0.975)] }
