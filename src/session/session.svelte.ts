@@ -219,7 +219,7 @@ export class Session {
   /** Where years may end and how likely each is: by the counter model where there are counts enough, else (and in an agreed count) by the count's own doubts. */
   #yearSites(count: Count): { position: Float64Array; probability: Float64Array } {
     const model = this.counterModel
-    if (model && count.id !== this.agreedCount?.id) {
+    if (model && count.id !== this.agreed?.id) {
       const outside = (place: number) =>
         !this.spans.some(({ kind, from, to }) => kind !== 'hiatus' && place > from && place < to)
       const kept = [...model.sites.keys()].filter((site) => outside(model.sites[site]))
