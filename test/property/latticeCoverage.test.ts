@@ -12,7 +12,10 @@ describe('95.4 % ranges hold the truth', () => {
     ['random counts', 0],
     ['biased counts', 0.02],
   ])('%s with outliers among the dates: at every quarter of the depth, 60 cores from seed 1', (_, biasSd) => {
-    const shares = coverage({ cores: 60, layers: 400, biasSd, dates: 5, outliers: 0.05, seed: 1 }, curve)
+    const shares = coverage(
+      { cores: 60, layers: 400, biasSd, assumedSd: biasSd, dates: 5, outliers: 0.05, seed: 1 },
+      curve,
+    )
     for (const share of shares) expect(share, JSON.stringify(shares)).toBeGreaterThan(0.88)
     // Ranges that always hold the truth are too wide.
     expect(Math.min(...shares)).toBeLessThan(1)

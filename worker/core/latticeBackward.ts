@@ -141,7 +141,8 @@ function meetDates(
   const logBefore = node.pass.logBefore.get(level) ?? -Infinity
   const before = sumOf(filtered)
   for (const d of here) {
-    if (problem.dates[d].fixed) continue
+    // A lone date of a floating count has nothing to be left out for.
+    if (problem.dates[d].fixed || problem.dates.length === 1) continue
     const others = here.filter((other) => other !== d)
     const product = keptRow(below)
     for (let k = 0; k < below.width; k++) product.values[product.at + k] *= filtered.values[filtered.at + k] / before

@@ -75,7 +75,7 @@ export function* forwardPass(problem: LatticeProblem, laws: StepLaws, trim: Trim
     pass.low[i] = band.low
     pass.width[i] = band.width
     if (keep) keepRow(pass, keep, band, i, first)
-    if ((i - first) % reportEvery === reportEvery - 1) yield { stage: 'ages', done: i, total: levels }
+    if ((i - first) % reportEvery === reportEvery - 1) yield { stage: 'bias', done: i, total: levels }
   }
   const sums = band.sums()
   pass.logEvidence = Math.log(sums.a) + band.logScale
