@@ -48,14 +48,15 @@ export function readCountTable(text: string, name: string, columns: CountColumns
     )
   }
   const depth = Float64Array.from(table.rows, (row) => depthOf(row[depthAt]))
-  const errors = positionErrors(depth, columns.depth).map((error) => ({
-    ...error,
-    value: table.rows[error.row - 1][depthAt],
-    row: table.lines[error.row - 1],
-    message: Number.isFinite(depth[error.row - 1])
-      ? error.message
-      : noNumber(columns.depth, table.rows[error.row - 1][depthAt]),
-  }))
+  const cellOn = new Map(table.lines.map((line, i) => [line, table.rows[i][depthAt]]))
+  const errors = positionErrors(depth, columns.depth, table.lines).map((error) => {
+    const cell = cellOn.get(error.row) ?? ''
+    return {
+      ...error,
+      value: cell,
+      message: Number.isFinite(depthOf(cell)) ? error.message : noNumber(columns.depth, cell),
+    }
+  })
   const rows: CountTableRow[] = []
   table.rows.forEach((row, i) => {
     const mark = markAt < 0 ? 'certain' : row[markAt].trim().toLowerCase()

@@ -19,19 +19,27 @@ export interface RowError {
   message: string
 }
 
-/** Positions must be finite and rise from row to row; each row is compared with the last good one before it. */
-export function positionErrors(position: ArrayLike<number>, column = 'position'): RowError[] {
+/**
+ * Positions must be finite and rise from row to row; each row is compared with the last good one before it. `rows`: the
+ * number by which each row is known, [rows]; else from 1.
+ */
+export function positionErrors(
+  position: ArrayLike<number>,
+  column = 'position',
+  rows: ArrayLike<number> | null = null,
+): RowError[] {
   const errors: RowError[] = []
   let last = -Infinity
   let lastRow = 0
   for (let i = 0; i < position.length; i++) {
     const value = position[i]
     const problem = positionProblem(value, last, lastRow)
-    if (problem) errors.push({ row: i + 1, column, value: String(value), message: `${column} ${problem}` })
+    const row = rows ? rows[i] : i + 1
+    if (problem) errors.push({ row, column, value: String(value), message: `${column} ${problem}` })
     // A row that runs backwards becomes the new start, so that one wrong depth is one error and not a thousand.
     if (Number.isFinite(value)) {
       last = value
-      lastRow = i + 1
+      lastRow = row
     }
   }
   return errors
