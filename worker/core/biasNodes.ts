@@ -33,8 +33,8 @@ const mostShift = 2
 /** A shift of one year between nodes leaves no gap, however sharp the level is. */
 const leastSd = 0.5
 /** Nodes whose weight is this far below the largest do not call for finer neighbours. */
-const negligible = Math.log(1e-7)
-const negligibleWithoutOne = Math.log(1e-5)
+const negligible = Math.log(1e-6)
+const negligibleWithoutOne = Math.log(1e-4)
 /** The posterior of the bias is at least this wide, in prior SD: for a first lower bound of the evidence. */
 const narrowest = 0.02
 

@@ -19,13 +19,13 @@ export interface HardWater {
   signature: boolean
 }
 
-/** Offsets tried, 14C a. */
-const tried = { from: -400, to: 4000, step: 20 }
-/** Placements of a floating count tried about the posterior, years older and younger. */
-const around = { younger: 4400, older: 800, step: 5 }
-/** Bias tried, in prior SD. */
+/** Offsets tried, 14C a; finer about the best. */
+const tried = { from: -400, to: 4000, step: 40, fine: 10 }
+/** Placements of a floating count tried about the posterior, years younger and older: a curve's wiggle is wider than a step. */
+const around = { younger: 4400, older: 800, step: 10 }
+/** Bias tried, in prior SD: an anchored count has few other placements, a floating one many. */
 const biasReach = 3
-const biasStep = 0.5
+const biasSteps = { anchored: 0.5, floating: 1.5 }
 /** A signature must gain this much, be larger than this, and leave a fit at least this probable. */
 const least = { logGain: 4.5, offset: 40, probability: 0.05, dates: 3 }
 
@@ -47,15 +47,12 @@ export function hardWater(
   checks: readonly DateCheck[],
   biasSd: number,
 ): HardWater | null {
-  const carbon = dates.filter(({ kind }, d) => kind === 'c14' && !(checks[d].outlierProbability > 0.5))
+  const carbon = carbonDates(dates, checks)
   if (carbon.length < least.dates) return null
   const placements = placementsOf(counted, dates, checks, biasSd)
-  const offsets: number[] = []
-  for (let offset = tried.from; offset <= tried.to; offset += tried.step) offsets.push(offset)
-  const scores = offsets.map((offset) => logLikelihood(counted, carbon, placements, offset))
-  const none = logLikelihood(counted, carbon, placements, 0)
-  let best = 0
-  for (let k = 1; k < scores.length; k++) if (scores[k] > scores[best]) best = k
+  const score = (offset: number) => logLikelihood(counted, carbon, placements, offset)
+  const { offsets, scores, best } = searched(score)
+  const none = score(0)
   let low = best
   let high = best
   while (low > 0 && scores[low - 1] > scores[best] - 2) low--
@@ -76,6 +73,28 @@ export function hardWater(
   }
 }
 
+/** Offsets in rising order with their scores, coarse far from the best and fine about it. */
+function searched(score: (offset: number) => number): { offsets: number[]; scores: number[]; best: number } {
+  const found = new Map<number, number>()
+  const tryFrom = (from: number, to: number, step: number) => {
+    for (let offset = from; offset <= to; offset += step) if (!found.has(offset)) found.set(offset, score(offset))
+  }
+  const bestOf = () => [...found].reduce((a, b) => (b[1] > a[1] ? b : a))[0]
+  tryFrom(tried.from, tried.to, tried.step)
+  const coarse = bestOf()
+  tryFrom(coarse - 2 * tried.step, coarse + 2 * tried.step, tried.fine)
+  const offsets = [...found.keys()].sort((a, b) => a - b)
+  const scores = offsets.map((offset) => found.get(offset) ?? -Infinity)
+  return { offsets, scores, best: offsets.indexOf(bestOf()) }
+}
+
+/** Radiocarbon dates without single outliers; where many are called outliers, it is what they share that is looked for. */
+function carbonDates(dates: readonly DateLikelihood[], checks: readonly DateCheck[]): DateLikelihood[] {
+  const all = dates.filter(({ kind }) => kind === 'c14')
+  const sound = dates.filter(({ kind }, d) => kind === 'c14' && !(checks[d].outlierProbability > 0.5))
+  return 3 * sound.length >= 2 * all.length ? sound : all
+}
+
 function placementsOf(
   counted: StepLaws,
   dates: readonly DateLikelihood[],
@@ -85,7 +104,8 @@ function placementsOf(
   const anchor = dates.find(({ fixed }) => fixed)
   const known = dates.filter(({ kind, fixed }) => kind === 'year' && !fixed)
   const factors: { factor: number; logPrior: number }[] = []
-  for (let z = biasSd > 0 ? -biasReach : 0; z <= (biasSd > 0 ? biasReach : 0); z += biasStep) {
+  const step = anchor ? biasSteps.anchored : biasSteps.floating
+  for (let z = biasSd > 0 ? -biasReach : 0; z <= (biasSd > 0 ? biasReach : 0); z += step) {
     factors.push({ factor: Math.exp(biasSd * z), logPrior: -0.5 * z * z })
   }
   const placements: Placement[] = []

@@ -32,7 +32,7 @@ interface Climb {
 }
 
 /** Nodes with a smaller weight add nothing that shows. */
-const leastWeight = 1e-16
+const leastWeight = 1e-11
 
 /**
  * The way up (smoothing), all nodes side by side from base to top: reports each level's posterior, and returns for every
