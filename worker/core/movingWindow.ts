@@ -6,6 +6,14 @@ import { atRow, type PerRow } from './runs.ts'
  * It may change from row to row; the cost is that of the rows that enter and leave.
  */
 function checkHalf(half: PerRow, rows: number): void {
+  if (typeof half !== 'number' && half.length !== rows) {
+    throw new Fault(
+      'argument',
+      'half',
+      half.length,
+      `half windows must be as many as there are rows (${rows}); there are ${half.length}`,
+    )
+  }
   for (let row = 0; row < (typeof half === 'number' ? Math.min(1, rows) : rows); row++) {
     const value = atRow(half, row)
     if (!Number.isInteger(value) || value < 0) {
@@ -16,14 +24,6 @@ function checkHalf(half: PerRow, rows: number): void {
         `half a window must be a whole number of at least 0; at row ${row} it is ${value}`,
       )
     }
-  }
-  if (typeof half !== 'number' && half.length !== rows) {
-    throw new Fault(
-      'argument',
-      'half',
-      half.length,
-      `half windows must be as many as there are rows (${rows}); there are ${half.length}`,
-    )
   }
 }
 

@@ -17,6 +17,11 @@ const leastSamples = 12
 const cellsAcross = 4
 /** Cells whose gradients lie less along one line than this tell nothing of the bedding. */
 const leastCoherence = 0.3
+/**
+ * The variance of the direction of n gradients is (1 - c^2) / (4 c^2 n) for a coherence c (from the two eigenvalues of the
+ * tensor, the smaller taken as noise): cells weigh by its inverse, up to this many times n, so that no single one decides.
+ */
+const mostWeight = 5
 /** Blocks to either side that have a say in a block's tilt. */
 export const blocksAround = 8
 
@@ -132,7 +137,10 @@ function slopeOfCell(
   const tensor = { xx: xx - (sumX * sumX) / count, xy: xy - (sumX * sumY) / count, yy: yy - (sumY * sumY) / count }
   const clear = coherence(tensor)
   const angle = 0.5 * Math.atan2(2 * tensor.xy, tensor.yy - tensor.xx)
-  return { slope: -Math.tan(angle) / noiseRatio, weight: clear > leastCoherence ? clear * clear * count : 0 }
+  return {
+    slope: -Math.tan(angle) / noiseRatio,
+    weight: clear > leastCoherence ? Math.min(mostWeight, (clear * clear) / (1 - clear * clear)) * count : 0,
+  }
 }
 
 const energy = (kernel: Float64Array) => kernel.reduce((sum, value) => sum + value * value, 0)
