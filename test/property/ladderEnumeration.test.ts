@@ -23,7 +23,8 @@ function drawStretch(random: Random, sites: number): Stretch {
   const forced = new Uint8Array(sites)
   if (random.uniform() < 0.5) forced[random.below(sites)] = 1
   const shows = u.map(() => (random.uniform() < 0.6 ? 1 : 0))
-  return { u, weight, forced, shows: Uint8Array.from(shows), start: 0, end: at + random.uniform() }
+  const expected = u.map(() => 0.3 * random.normal())
+  return { u, weight, forced, shows: Uint8Array.from(shows), expected, start: 0, end: at + random.uniform() }
 }
 
 function drawLaw(random: Random): YearLaw {
@@ -32,15 +33,22 @@ function drawLaw(random: Random): YearLaw {
   return {
     trust: random.uniform() < 0.5 ? 1 : 0.4 + 0.6 * random.uniform(),
     thickness: thicknessLaw(0.1 + 0.5 * random.uniform(), 0.02 * random.uniform()),
-    inner: { rate: random.uniform(), phase: Float64Array.from(raw, (one) => one / mean) },
+    inner: {
+      rate: random.uniform(),
+      number: Float64Array.from({ length: 4 }, () => random.uniform()),
+      phase: Float64Array.from(raw, (one) => one / mean),
+    },
   }
 }
 
 /** Weight of two sites as the boundaries of one year, straight from the definition. */
-function yearWeight({ u, shows }: Stretch, law: YearLaw, i: number, j: number): number {
+function yearWeight({ u, shows, expected }: Stretch, law: YearLaw, i: number, j: number): number {
   const d = u[j] - u[i]
   if (d > law.thickness.longest) return bedTail(law, d)
-  let weight = densityAt(law.thickness, d) * Math.exp(-law.inner.rate)
+  const held = Math.min(d * Math.exp(-expected[i]), law.thickness.longest)
+  let weight = densityAt(law.thickness, held) * Math.exp(-expected[i])
+  const inside = shows.subarray(i + 1, j).reduce((total, one) => total + one, 0)
+  weight *= law.inner.number[Math.min(3, inside)]
   for (let k = i + 1; k < j; k++) {
     if (shows[k] === 1 && weight > 0) weight *= law.inner.phase[Math.min(15, Math.floor((16 * (u[k] - u[i])) / d))] / d
   }

@@ -18,19 +18,37 @@ export interface Columns {
   values: Float64Array
 }
 
-/**
- * The features, and mean and standard deviation of the prior of the coefficient of each. Means are round figures near what
- * regression on drawn cores of all types gives; deviations are wide enough for any one type.
- */
-const features = ['log prominence', 'log edge strength', 'continuity', 'log width'] as const
+/** What is seen of a candidate; each is held against the usual of the years around it, so that 0 is a usual year. */
+const features = [
+  'log contrast',
+  'log edge strength in the same units',
+  'continuity',
+  'log width over local thickness',
+  'log edge strength over the strongest nearby',
+] as const
 export const featureCount = features.length
-const priorMean = [4, 1.2, 3, 2, 1.5]
-const priorDeviation = [1.2, 0.7, 1.2, 0.7, 0.7]
+/**
+ * What holds before anything is learned: the log odds of a candidate with the looks given, and how far a core may depart
+ * from it (standard deviation). Figures are rounded from regressions on drawn cores of all types.
+ */
+const anchors = [
+  // The looks of a usual year.
+  { looks: [0, 0, 0.1, 0, 0], logOdds: 4.5, deviation: 1 },
+  // Half as strong: a pale year here, a second lamina of the year there.
+  { looks: [-0.8, -0.9, 0, -0.3, -0.7], logOdds: 0.5, deviation: 2 },
+  // What grain looks like.
+  { looks: [-2.2, -2, -0.4, -0.7, -1.5], logOdds: -5.5, deviation: 1 },
+]
+/** Coefficients of the constant and the features that agree with that, and how far each may depart by itself. */
+const priorMean = [4.2, 0.6, 2.2, 2, 1, 3]
+const priorDeviation = [3, 1, 1.5, 1, 1, 1.5]
 /** Looks alone never say more than this. */
 const mostLogOdds = 6
 /** Logs of features are bounded: beyond a twelfth or three times the usual nothing more is learned. */
 const leastLog = -2.5
 const mostLog = 1.1
+/** Candidates closer than this share of the local thickness are likely to belong to the same year. */
+const nearbyShare = 0.7
 /** Layers over which the usual looks are remembered, and layers that the core's mean is worth. */
 const referenceMemory = 15
 const referencePrior = 5
@@ -42,14 +60,29 @@ const bounded = (value: number) => (Number.isNaN(value) ? 0 : Math.max(leastLog,
 export function looksOf(candidates: Candidates, median: Float64Array): Columns {
   const count = candidates.position.length
   const values = new Float64Array(count * featureCount)
+  const nearby = strongestNearby(candidates, median)
   for (let i = 0; i < count; i++) {
     const at = i * featureCount
-    values[at] = logOf(candidates.prominence[i], 1e-3)
-    values[at + 1] = logOf(candidates.edgeStrength[i], 1e-3)
+    // In the profile's own units: local standard deviations make the grain of an event bed look like laminae.
+    const spread = candidates.prominence[i] > 0 ? candidates.contrast[i] / candidates.prominence[i] : 0
+    values[at] = logOf(candidates.contrast[i], 1e-9)
+    values[at + 1] = logOf(candidates.edgeStrength[i] * spread, 1e-9)
     values[at + 2] = Number.isNaN(candidates.continuity[i]) ? 1 : candidates.continuity[i]
     values[at + 3] = logOf(candidates.width[i] / median[i], 1e-3)
+    values[at + 4] = Math.min(0, logOf(candidates.edgeStrength[i], 1e-9) - logOf(nearby[i], 1e-9))
   }
   return { count, values }
+}
+
+/** The greatest edge strength of any other candidate within most of a layer's thickness, [candidates]; 0 where there is none. */
+function strongestNearby({ peak, edgeStrength }: Candidates, median: Float64Array): Float64Array {
+  return peak.map((at, i) => {
+    const reach = nearbyShare * median[i]
+    let strongest = 0
+    for (let k = i - 1; k >= 0 && at - peak[k] < reach; k--) strongest = Math.max(strongest, edgeStrength[k])
+    for (let k = i + 1; k < peak.length && peak[k] - at < reach; k++) strongest = Math.max(strongest, edgeStrength[k])
+    return strongest
+  })
 }
 
 /** The usual looks before anything is believed: the middle of as many of the strongest candidates as there should be layers. */
@@ -109,7 +142,9 @@ export function localReference({ count, values }: Columns, belief: Float64Array)
 export function featuresOf({ count, values }: Columns, reference: Columns): Columns {
   const features = new Float64Array(count * featureCount)
   for (let at = 0; at < features.length; at++) {
-    const difference = bounded(values[at] - reference.values[at])
+    // The last feature is a comparison already.
+    const own = at % featureCount === featureCount - 1
+    const difference = bounded(own ? values[at] : values[at] - reference.values[at])
     // A wide lamina is as good as a usual one; a narrow one is often grain that survived the smoothing.
     features[at] = at % featureCount === 3 ? Math.min(0.5, difference) : difference
   }
@@ -125,7 +160,13 @@ export function startEvidence(constant: number): Evidence {
 export function logPrior({ coefficients }: Evidence): number {
   let log = 0
   for (let k = 0; k < coefficients.length; k++) log -= 0.5 * ((coefficients[k] - priorMean[k]) / priorDeviation[k]) ** 2
+  for (const anchor of anchors)
+    log -= 0.5 * ((oddsAt(anchor.looks, coefficients) - anchor.logOdds) / anchor.deviation) ** 2
   return log
+}
+
+function oddsAt(looks: readonly number[], coefficients: Float64Array): number {
+  return looks.reduce((sum, value, f) => sum + coefficients[f + 1] * value, coefficients[0])
 }
 
 /** Log odds of each candidate. */
@@ -153,6 +194,14 @@ export function learnEvidence({ count, values }: Columns, belief: Float64Array, 
     }
     const row = new Float64Array(size)
     row[0] = 1
+    for (const { looks, logOdds, deviation } of anchors) {
+      row.set(looks, 1)
+      const precision = 1 / deviation ** 2
+      for (let k = 0; k < size; k++) {
+        gradient[k] += precision * (logOdds - oddsAt(looks, coefficients)) * row[k]
+        for (let l = 0; l <= k; l++) curvature[k * size + l] += precision * row[k] * row[l]
+      }
+    }
     for (let i = 0; i < count; i++) {
       let sum = coefficients[0]
       for (let f = 0; f < featureCount; f++) {

@@ -29,6 +29,8 @@ export interface LadderModel {
   evidence: Evidence
   /** Share of years that left no candidate. */
   missed: number
+  /** How much of a layer's departure from the local median the next one keeps. */
+  memory: number
 }
 
 /** One part of the core between hiatuses, counted. */
@@ -57,7 +59,7 @@ const starts = [
  */
 const trust = 0.65
 /** Priors, each worth so many layers: spread of log thickness, missed years, unmarked beds, inner laminae per layer. */
-const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003, inner: 0.3 }
+const prior = { layers: 12, sigma: 0.35, missed: 0.015, bedShare: 0.003, inner: 0.3, memory: 0.3 }
 
 /** What the fit works on. */
 interface Task {
@@ -70,6 +72,8 @@ interface Task {
 interface State extends LadderModel {
   /** Looks of the candidates against the usual ones around them. */
   features: Columns
+  /** Log thickness over the local median expected below each candidate, [candidates]. */
+  expected: Float64Array
 }
 
 /**
@@ -105,8 +109,8 @@ export function* fitLadder(
   }
   state.law = { ...state.law, trust }
   parts = expect(task, state)
-  const { law, field, evidence, missed } = state
-  return { model: { law, field, evidence, missed }, parts }
+  const { law, field, evidence, missed, memory } = state
+  return { model: { law, field, evidence, missed, memory }, parts }
 }
 
 function looksIn({ candidates }: Task, field: ThicknessField): Columns {
@@ -127,12 +131,17 @@ function begin(task: Task, thickness: (position: number) => number, constant: nu
       trust: 1,
     },
     missed: prior.missed,
+    memory: 0,
+    expected: new Float64Array(task.candidates.position.length),
     evidence: startEvidence(constant),
     features: featuresOf(looks, firstReference(looks, field.coordinate(task.ground.rows))),
   }
 }
 
-function expect({ candidates, ground, fixed }: Task, { features, evidence, field, law, missed }: State): CountedPart[] {
+function expect(
+  { candidates, ground, fixed }: Task,
+  { features, evidence, field, law, missed, expected }: State,
+): CountedPart[] {
   const logWeight = logOddsOf(features, evidence)
   return laySites(
     candidates,
@@ -141,6 +150,7 @@ function expect({ candidates, ground, fixed }: Task, { features, evidence, field
     field,
     fixed,
     missed ** law.trust,
+    expected,
   ).map((part) => ({
     ...part,
     messages: forwardBackward(part.stretch, law),
@@ -149,12 +159,15 @@ function expect({ candidates, ground, fixed }: Task, { features, evidence, field
 
 function improve(task: Task, state: State, parts: CountedPart[]): void {
   const belief = beliefs(task.candidates.position.length, parts)
-  const found = layerStatistics(parts, state.law, state.field)
+  const found = layerStatistics(parts, state.law, state.field, task.candidates.position.length)
   state.law = {
     thickness: thicknessLaw(found.sigma(prior.sigma, prior.layers), found.bedShare(prior.bedShare, 4 * prior.layers)),
     inner: found.inner(prior.inner, prior.layers),
     trust: 1,
   }
+  const memory = found.memory(prior.memory, found.sigma(prior.sigma, prior.layers), prior.layers)
+  state.memory = memory
+  state.expected = found.above.map((one) => memory * Math.max(-1, Math.min(1, one)))
   followThickness(state.field, found.count, found.logSum)
   const { years, hidden } = tally(parts)
   state.missed = Math.min(0.2, (hidden + prior.missed * 4 * prior.layers) / (years + 4 * prior.layers))

@@ -48,6 +48,7 @@ export function laySites(
   field: ThicknessField,
   confirmed: Float64Array,
   missed: number,
+  expected: Float64Array,
 ): SitePart[] {
   const seen = seenSites(candidates, logWeight, ground, field, confirmed)
   return ground.parts.map(({ from, to }) => {
@@ -57,7 +58,7 @@ export function laySites(
       ...hiddenInUnreadable(ground, field, { from, to }),
     ]
     const sites = [...inPart, ...hidden].sort((a, b) => a.u - b.u || a.position - b.position)
-    return partOf(sites, field.coordinate(from), field.coordinate(to))
+    return partOf(sites, expected, field.coordinate(from), field.coordinate(to))
   })
 }
 
@@ -125,13 +126,15 @@ function hiddenInUnreadable(ground: Ground, field: ThicknessField, part: Range):
   return hidden
 }
 
-function partOf(sites: Site[], start: number, end: number): SitePart {
+function partOf(sites: Site[], expected: Float64Array, start: number, end: number): SitePart {
   return {
     stretch: {
       u: Float64Array.from(sites, ({ u }) => u),
       weight: Float64Array.from(sites, ({ weight }) => weight),
       forced: Uint8Array.from(sites, ({ kind }) => (kind === 'confirmed' ? 1 : 0)),
       shows: Uint8Array.from(sites, ({ kind }) => (kind === 'candidate' ? 1 : 0)),
+      // Of a site without a candidate nothing is known of the layer above it.
+      expected: Float64Array.from(sites, ({ candidate }) => (candidate < 0 ? 0 : expected[candidate])),
       start,
       end,
     },

@@ -3,17 +3,22 @@ import { bedFrom, bedMean } from './thicknessLaw.ts'
 import type { ThicknessLaw } from './thicknessLaw.ts'
 
 /**
- * What lies inside a year without being its boundary: `rate` laminae a year on average, at places that may be typical
- * (an autumn bloom stands at the same share of the year), `phase` their density over equal steps of the year's thickness from
- * its young to its old boundary, mean 1.
+ * What lies inside a year without being its boundary: none, one, two or more laminae, and where; a second lamina of the year
+ * stands there in most years or in none, and at much the same share of the year.
  */
 export interface InnerLaw {
+  /** Mean number of laminae a year. */
   rate: number
+  /** For 0, 1, 2, 3 or more laminae: their probability times k! / rate^k, which is e^(-rate) for a Poisson number. */
+  number: Float64Array
+  /** Density of their places over equal steps of the year's thickness from its young to its old boundary, mean 1. */
   phase: Float64Array
 }
 
 /** Steps in which the phase of inner laminae is held. */
 export const phaseSteps = 16
+/** Numbers of inner laminae held apart: 0, 1, 2, and 3 or more. */
+export const numberSteps = 4
 
 /** The laws of a year: how thick it is, and what it shows inside. */
 export interface YearLaw {
@@ -24,12 +29,17 @@ export interface YearLaw {
 }
 
 export function evenInnerLaw(rate: number): InnerLaw {
-  return { rate, phase: new Float64Array(phaseSteps).fill(1) }
+  return {
+    rate,
+    number: new Float64Array(numberSteps).fill(Math.exp(-rate)),
+    phase: new Float64Array(phaseSteps).fill(1),
+  }
 }
 
 /**
  * Weights of pairs of sites as the two boundaries of one year,
- *   g(i, j) = [f(d) e^(-rate) prod over the sites k between that show something: phase((u_k - u_i) / d) / d]^trust,   d = u_j - u_i,
+ *   g(i, j) = [f(d) number(k) prod over the sites k between that show something: phase((u_k - u_i) / d) / d]^trust,   d = u_j - u_i,
+ * f held against the thickness expected below site i,
  * for all j from i + 1 while d stays within the law's table and no forced site is jumped over. Pairs of site i are
  * weight[offset[i]] (for j = i + 1) to weight[offset[i + 1] - 1].
  */
@@ -38,7 +48,7 @@ export interface LayerPairs {
   weight: Float64Array
 }
 
-export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner, trust }: YearLaw): LayerPairs {
+export function layerPairs({ u, forced, shows, expected }: Stretch, { thickness, inner, trust }: YearLaw): LayerPairs {
   const n = u.length
   const { density, longest, perUnit } = thickness
   const offset = new Int32Array(n + 1)
@@ -48,16 +58,21 @@ export function layerPairs({ u, forced, shows }: Stretch, { thickness, inner, tr
     offset[i + 1] = offset[i] + last - i
   }
   const weight = new Float64Array(offset[n])
-  const between = Math.exp(-inner.rate)
   const steps = inner.phase.length
   const seen = new Float64Array(n)
   for (let i = 0; i < n; i++) {
     let inside = 0
+    const shrink = Math.exp(-expected[i])
+    const jacobian = Math.exp(-expected[i])
     for (let at = offset[i], j = i + 1; at < offset[i + 1]; at++, j++) {
       const d = u[j] - u[i]
-      const cell = d * perUnit
+      // Thickness over what is expected here; the density is that of d, hence the factor.
+      const cell = Math.min(d * shrink, longest) * perUnit
       const k = Math.floor(cell)
-      let g = between * (density[k] + (cell - k) * (density[k + 1] - density[k]))
+      let g =
+        jacobian *
+        inner.number[Math.min(numberSteps - 1, inside)] *
+        (density[k] + (cell - k) * (density[k + 1] - density[k]))
       if (g > 0) {
         for (let s = 0; s < inside; s++) g *= inner.phase[Math.min(steps - 1, Math.floor((seen[s] * steps) / d))] / d
       }

@@ -22,6 +22,8 @@ export interface Stretch {
   forced: Uint8Array
   /** 1: something is seen at the site; where it is no boundary it is a lamina inside a year, [sites]. */
   shows: Uint8Array
+  /** Log of the thickness expected of a layer whose young boundary is the site, over the local median; from the layer above it, [sites]. */
+  expected: Float64Array
   start: number
   end: number
 }
