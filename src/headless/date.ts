@@ -17,15 +17,19 @@ import { curveOptions, curveOptionsHelp, curvesOf } from './curves.ts'
 import { datingSummary } from './datingSummary.ts'
 import { deliver, deliveryOf, jsonText } from './delivery.ts'
 import { readJson, readText } from './files.ts'
-import type { Verb } from './verb.ts'
+import { readProjectDating } from './projectDating.ts'
+import type { Call, Options, Verb } from './verb.ts'
 
 export const date: Verb = {
   name: 'date',
   summary: 'tie a count to the calendar and test it against its dates',
   help: `npx winterclay date --layers layers.csv --dates dates.csv [options] --out DIR
+npx winterclay date PROJECT [options] --out DIR
 
 Works out the exact posterior of the calendar year of every layer, given the count with its errors and all dates.
 
+  PROJECT            a project file: the agreed count of each section, or the model of three or more counts, or the
+                     latest count with doubtful layers as one half; the dates in use; the coring year at an intact top
   --layers FILE      layers as "winterclay count" writes them: layer,depth_mm,thickness_mm,probability,kind
   --dates FILE       dates: id,kind,top_mm,base_mm,value,sigma,offset,offset_sigma; kind year (astronomical, 0 is
                      1 BCE; sigma 0: exact), c14 (14C a before 1950) or f14c; offset is subtracted from value.
@@ -61,31 +65,13 @@ summary.json: curves with SHA-256, bias asked for by the dates, overall fit, out
     'missed-rate': { type: 'string' },
   },
   async run(call) {
-    wordsOf(call)
-    const layersFile = needed(call.options, 'layers')
-    const datesFile = textOption(call.options, 'dates')
-    const topYear = numberOption(call.options, 'top-year')
-    if (topYear !== null) checkInteger('--top-year', topYear, -100_000, 3000)
-    const biasSd = checkWithin('--bias-sd', numberOption(call.options, 'bias-sd') ?? latticeDefaults.biasSd, 0, 0.5)
-    const curves = await curvesOf(call.options)
-    const { layers, names } = await readLayers(layersFile)
-    const rows = datesFile === null ? [] : await readDates(datesFile)
-    const missed = await missedRate(numberOption(call.options, 'missed-rate'), layersFile, layers)
-    const request: DatingRequest = {
-      layers,
-      dates: rows,
-      topYear,
-      curves,
-      chain: { missedRate: missed.rate },
-      lattice: { biasSd },
-    }
-    if (datesFile !== null) refuseUnplaced(datesFile, rows, request)
+    const { names, missed, request } = call.words.length > 0 ? await fromProject(call) : await fromTables(call.options)
     const result = finish(dateCore(request))
     // Nothing is written, not even the folder, before everything is known to be good.
     const delivery = await deliveryOf(call)
     const summary = datingSummary(request, result, missed)
     const files = {
-      'ages.csv': agesTable(names, layers.depth, result.ages),
+      'ages.csv': agesTable(names, request.layers.depth, result.ages),
       'date_checks.csv': dateChecksTable(result.checks.filter(({ fixed }) => !fixed)),
       'summary.json': jsonText(summary.json),
     }
@@ -93,7 +79,57 @@ summary.json: curves with SHA-256, bias asked for by the dates, overall fit, out
   },
 }
 
-function needed(options: Parameters<typeof textOption>[0], name: string): string {
+/** What is to be dated, however it came in. */
+interface Dated {
+  names: string[]
+  missed: MissedRate
+  request: DatingRequest
+}
+
+async function fromTables(options: Options): Promise<Dated> {
+  const layersFile = needed(options, 'layers')
+  const datesFile = textOption(options, 'dates')
+  const common = await commonRequest(options)
+  const { layers, names } = await readLayers(layersFile)
+  const rows = datesFile === null ? [] : await readDates(datesFile)
+  const missed = await missedRate(numberOption(options, 'missed-rate'), layersFile, layers)
+  const request: DatingRequest = { ...common, layers, dates: rows, chain: { missedRate: missed.rate } }
+  if (datesFile !== null) refuseUnplaced(datesFile, rows, request)
+  return { names, missed, request }
+}
+
+async function fromProject(call: Call): Promise<Dated> {
+  const [file] = wordsOf(call, 'PROJECT')
+  for (const name of ['layers', 'dates']) {
+    const given = textOption(call.options, name)
+    if (given !== null) argumentFault(`--${name}`, given, `--${name} cannot be given with a project; it has its own`)
+  }
+  const common = await commonRequest(call.options)
+  const project = await readProjectDating(file)
+  const option = numberOption(call.options, 'missed-rate')
+  const missed: MissedRate =
+    option === null
+      ? { rate: project.missedRate, from: project.missedRate > 0 ? 'repeat counts' : 'none' }
+      : { rate: checkWithin('--missed-rate', option, 0, 1), from: 'option' }
+  const request: DatingRequest = {
+    ...common,
+    layers: project.layers,
+    dates: project.dates,
+    topYear: common.topYear ?? project.topYear,
+    chain: { missedRate: missed.rate },
+  }
+  return { names: project.names, missed, request }
+}
+
+/** What both ways in have in common. */
+async function commonRequest(options: Options): Promise<Pick<DatingRequest, 'topYear' | 'curves' | 'lattice'>> {
+  const topYear = numberOption(options, 'top-year')
+  if (topYear !== null) checkInteger('--top-year', topYear, -100_000, 3000)
+  const biasSd = checkWithin('--bias-sd', numberOption(options, 'bias-sd') ?? latticeDefaults.biasSd, 0, 0.5)
+  return { topYear, curves: await curvesOf(options), lattice: { biasSd } }
+}
+
+function needed(options: Options, name: string): string {
   return textOption(options, name) ?? argumentFault(`--${name}`, undefined, `--${name} FILE is missing`)
 }
 
@@ -125,7 +161,7 @@ function refuseUnplaced(file: string, rows: readonly DateRow[], request: DatingR
 /** The rate of missed years and where it comes from. */
 export interface MissedRate {
   rate: number
-  from: 'option' | 'summary.json of the count' | 'none'
+  from: 'option' | 'summary.json of the count' | 'repeat counts' | 'none'
 }
 
 /**

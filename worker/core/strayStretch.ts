@@ -36,7 +36,7 @@ interface Dated {
 /** A deviation less probable than this by chance is named. */
 const leastProbability = 0.05
 /** Years of a calibrated date further from the leave-one-out age than this do not speak for the level's year. */
-const window = { sds: 8, years: 400 }
+const nearby = { sds: 8, years: 400 }
 /** The year of the top is free: an anchor is one more dated level, with next to no error. */
 const freeVariance = 1e7
 
@@ -101,7 +101,7 @@ function datedLevels(dates: readonly DateLikelihood[], checks: readonly DateChec
 
 function nearOthers({ alone, without }: DateCheck): { x: number; sd: number } {
   const centre = moments(without.low, without.probability, () => true)
-  const reach = Math.max(window.sds * centre.sd, window.years)
+  const reach = Math.max(nearby.sds * centre.sd, nearby.years)
   const own = moments(alone.low, alone.probability, (x) => Math.abs(x - centre.x) <= reach)
   return { x: own.x, sd: Math.max(0.3, own.sd) }
 }

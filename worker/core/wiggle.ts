@@ -39,11 +39,11 @@ export interface Window {
 export function wiggleMatch(
   dates: readonly WiggleDate[],
   curve: YearlyCurve,
-  window: Window | null = null,
+  within: Window | null = null,
   model: ErrorModel = normalModel,
 ): WiggleMatch {
   if (dates.length === 0) throw new Fault('argument', 'dates', 0, 'a wiggle match needs at least one date')
-  const { from, to } = placements(dates, curve, window)
+  const { from, to } = placements(dates, curve, within)
   const density = densityOf(model)
   const logs = new Float64Array(to - from + 1)
   const chiSquare = new Float64Array(to - from + 1)
@@ -65,20 +65,20 @@ export function wiggleMatch(
 }
 
 /** Placements at which every date lies on the curve, within the window. */
-function placements(dates: readonly WiggleDate[], curve: YearlyCurve, window: Window | null): Window {
+function placements(dates: readonly WiggleDate[], curve: YearlyCurve, within: Window | null): Window {
   const oldest = dates.reduce((most, { older }) => Math.max(most, older), -Infinity)
   const youngest = dates.reduce((least, { older }) => Math.min(least, older), Infinity)
   const end = curve.from + curve.age.length - 1
   const least = Math.ceil(curve.from - youngest)
   const most = Math.floor(end - oldest)
-  if (window) {
-    checkInteger('window from', window.from, -1e6)
-    checkInteger('window to', window.to, window.from)
+  if (within) {
+    checkInteger('window from', within.from, -1e6)
+    checkInteger('window to', within.to, within.from)
   }
-  const from = Math.max(least, window?.from ?? least)
-  const to = Math.min(most, window?.to ?? most)
+  const from = Math.max(least, within?.from ?? least)
+  const to = Math.min(most, within?.to ?? most)
   if (!(to >= from)) {
-    const message = `the series of ${oldest - youngest} years fits nowhere on the curve (${curve.from} to ${end} cal BP)${window ? ` within ${window.from} to ${window.to} cal BP` : ''}`
+    const message = `the series of ${oldest - youngest} years fits nowhere on the curve (${curve.from} to ${end} cal BP)${within ? ` within ${within.from} to ${within.to} cal BP` : ''}`
     throw new Fault('argument', 'dates', oldest - youngest, message)
   }
   return { from, to }
