@@ -1,3 +1,5 @@
+import type { DecodePool } from './decodePool.ts'
+
 /** What the platform does for the readers: a browser by its image decoder, a test in Node by another library. */
 export interface Decoders {
   /**
@@ -5,6 +7,8 @@ export interface Decoders {
    * without colour management, turning or premultiplication. Rejects where the data cannot be decoded.
    */
   decodeImage(file: Blob, shape: DecodedShape): Promise<Uint8Array>
+  /** Workers to unpack blocks and to hash side by side; without them all is done on the caller's thread. */
+  pool?: DecodePool
 }
 
 export interface DecodedShape {

@@ -19,13 +19,15 @@ export class LzwDecoder {
   taken = 0
   filled = 0
   finished = false
-  private readonly starts = new Int32Array(mostCodes)
-  private readonly lengths = new Int32Array(mostCodes)
-  private next = endCode + 1
+  // One entry more than there are codes: a full table goes on writing into it.
+  private readonly starts = new Int32Array(mostCodes + 1)
+  private readonly lengths = new Int32Array(mostCodes + 1)
+  /** The entry to be made next; after a clear the first one falls on the end code, which no string can bear. */
+  private next = endCode
   private width = 9
   private buffer = 0
   private bits = 0
-  private previousStart = -1
+  private previousStart = 0
   private previousLength = 0
   /** Where the strings of the table begin in the output, and, once the table is full, where they end. */
   private historyStart = 0
@@ -40,19 +42,25 @@ export class LzwDecoder {
     const { output, starts, lengths } = this
     const limit = this.taken + count
     let { filled, next, width, buffer, bits, previousStart, previousLength } = this
+    let mask = (1 << width) - 1
     let at = from
     while (filled < limit) {
-      while (bits < width && at < to) {
+      if (bits < width && at + 1 < to) {
+        buffer = (buffer << 16) | (input[at] << 8) | input[at + 1]
+        at += 2
+        bits += 16
+      } else if (bits < width && at < to) {
         buffer = (buffer << 8) | input[at++]
         bits += 8
-      }
-      if (bits < width) break
+        // One byte may not be enough: look again.
+        continue
+      } else if (bits < width) break
       bits -= width
-      const code = (buffer >>> bits) & ((1 << width) - 1)
+      const code = (buffer >>> bits) & mask
       if (code === clearCode) {
-        next = endCode + 1
+        next = endCode
         width = 9
-        previousStart = -1
+        mask = 511
         this.historyStart = filled
         this.historyEnd = Infinity
         continue
@@ -61,29 +69,26 @@ export class LzwDecoder {
         this.finished = true
         break
       }
-      if (previousStart >= 0 && next < mostCodes) {
-        starts[next] = previousStart
-        lengths[next] = previousLength + 1
-        next++
-        if (next === mostCodes) this.historyEnd = previousStart + previousLength + 1
-        if (next === (1 << width) - 1 && width < 12) width++
-      }
+      // The string before this one and its own first byte, which stands right behind it.
+      starts[next] = previousStart
+      lengths[next] = previousLength + 1
+      if (next < mostCodes && ++next === mostCodes) this.historyEnd = previousStart + previousLength + 1
+      if (next === mask && width < 12) mask = (1 << ++width) - 1
+      previousStart = filled
       if (code < clearCode) {
         previousLength = 1
-        previousStart = filled
         output[filled++] = code
+        continue
+      }
+      if (code >= next) throw damaged('LZW data', code, `names code ${code} before it exists`)
+      let source = starts[code]
+      previousLength = lengths[code]
+      const end = filled + previousLength
+      if (previousLength > 32 && source + previousLength <= filled) {
+        output.copyWithin(filled, source, source + previousLength)
+        filled = end
       } else {
-        if (code >= next) throw damaged('LZW data', code, `names code ${code} before it exists`)
-        let source = starts[code]
-        previousLength = lengths[code]
-        previousStart = filled
-        const end = filled + previousLength
-        if (previousLength > 24 && source + previousLength <= filled) {
-          output.copyWithin(filled, source, source + previousLength)
-          filled = end
-        } else {
-          while (filled < end) output[filled++] = output[source++]
-        }
+        while (filled < end) output[filled++] = output[source++]
       }
     }
     Object.assign(this, { filled, next, width, buffer, bits, previousStart, previousLength })
@@ -103,7 +108,7 @@ export class LzwDecoder {
     for (let code = endCode + 1; code < this.next; code++) this.starts[code] -= from
     this.historyStart = 0
     this.historyEnd -= from
-    if (this.previousStart >= 0) this.previousStart -= from
+    this.previousStart -= from
     this.taken = to - from
     this.filled = to - from + this.filled - end
     this.output = output

@@ -2,6 +2,7 @@ import { Fault } from '../check.ts'
 import { samplesOf } from '../core/scan.ts'
 import type { Progress } from '../work.ts'
 import { browserDecoders } from './browserDecoders.ts'
+import { DecodePool } from './decodePool.ts'
 import { blobSource } from './bytes.ts'
 import type { Decoders } from './decoders.ts'
 import { describeScan } from './describe.ts'
@@ -24,8 +25,13 @@ type OnProgress = (progress: Progress) => void
  * Rejects with a Fault that says what is wrong with the file and what to do.
  */
 export function openScan(file: Blob, name: string, onProgress?: OnProgress, signal?: AbortSignal): Promise<Scan> {
-  return openScanWith(browserDecoders, file, name, onProgress, signal)
+  return openScanWith(pooledDecoders, file, name, onProgress, signal)
 }
+
+const pooledDecoders: Decoders = { ...browserDecoders, pool: new DecodePool() }
+
+/** A file that is hashed faster than a worker is started. */
+const smallFile = 4 << 20
 
 /** As `openScan`, with the platform's decoders given: for tests outside a browser. */
 export async function openScanWith(
@@ -38,9 +44,12 @@ export async function openScanWith(
   const source = blobSource(file)
   const description = await describeScan(source, name)
   signal?.throwIfAborted()
-  const hashing = hashSource(source, onProgress, signal)
-  // The platform decodes beside us while the file is being hashed; what we unpack ourselves comes after it.
-  if (description.format === 'png') await hashing
+  const hashing =
+    decoders.pool && file.size > smallFile
+      ? decoders.pool.hash(file, onProgress, signal)
+      : hashSource(source, onProgress, signal)
+  // Decoding goes on beside the hashing where there is a thread for each; on one thread it comes after.
+  if (description.format === 'png' && !decoders.pool) await hashing
   const opening = openPixels(description, source, file, decoders, onProgress, signal)
   const [sha256, store] = await Promise.all([hashing, opening])
   signal?.throwIfAborted()

@@ -49,12 +49,19 @@ export async function makeLevel(
   const output = samplesArray(shape.bits, coarser.width * coarser.height * channels)
   const bandRows = Math.ceil(Math.max(store.rowsOfBand(from), 64) / factor) * factor
   const pace = pacer()
+  const readBand = (y: number) =>
+    store.read({ x: 0, y, width: finer.width, height: Math.min(bandRows, finer.height - y) }, from)
+  let next = readBand(0)
   for (let y = 0; y < finer.height; y += bandRows) {
     signal?.throwIfAborted()
-    const height = Math.min(bandRows, finer.height - y)
-    const band = await store.read({ x: 0, y, width: finer.width, height }, from)
+    const band = await next
+    // The next band is unpacked by other threads while this one is averaged. Should it fail, it is awaited in its turn.
+    if (y + bandRows < finer.height) {
+      next = readBand(y + bandRows)
+      next.catch(() => undefined)
+    }
     shrinkBand(band, factor, output.subarray((y / factor) * coarser.width * channels))
-    onProgress?.({ stage: 'overview', done: y + height, total: finer.height })
+    onProgress?.({ stage: 'overview', done: Math.min(y + bandRows, finer.height), total: finer.height })
     await pace()
   }
   return samplesOf(output, coarser.width, coarser.height, channels)

@@ -2,6 +2,7 @@ import { samplesOf } from '../core/scan.ts'
 import type { Region } from '../units.ts'
 import type { Samples } from '../work.ts'
 import { BlockCache } from './blockCache.ts'
+import type { DecodePool } from './decodePool.ts'
 import type { Decoders } from './decoders.ts'
 import { samplesArray } from './pixelStore.ts'
 import type { PixelStore } from './pixelStore.ts'
@@ -19,8 +20,12 @@ const cacheBytes = 128 << 20
 const groupBytes = 4 << 20
 const groupUnpackedBytes = 16 << 20
 const largestGap = 64 << 10
+/** For a pass over a level, about this much is read at once: several blocks, so that there is something to share out. */
+const bandBytes = 16 << 20
 /** Groups in work at the same time: while one waits for the disk or the platform's decoder, another is unpacked. */
-const groupsAtOnce = 3
+const groupsAtOnce = 4
+/** Fewer blocks than this are decoded on the spot: a picture's first tiles should not wait for a worker to start. */
+const fewBlocks = 5
 
 /** The samples of a TIFF, read from the file block by block as regions are asked for. */
 export class TiffPixels implements PixelStore {
@@ -41,12 +46,14 @@ export class TiffPixels implements PixelStore {
   async read(region: Region, level: number): Promise<Samples> {
     const { image } = this.levels[level]
     const output = samplesArray(image.bits, region.width * region.height * image.channels)
-    const groups = groupBlocks(image, blocksOf(image, region))
+    const indices = blocksOf(image, region)
+    const groups = groupBlocks(image, indices)
+    const pool = indices.length < fewBlocks || image.compression === 'none' ? undefined : this.decoders.pool
     let next = 0
     const worker = async () => {
       while (next < groups.length) {
         const group = groups[next++]
-        for (const [index, block] of this.load(level, group)) {
+        for (const [index, block] of this.load(level, group, pool)) {
           copyBlock(image, index, await block, region, output)
         }
       }
@@ -56,8 +63,9 @@ export class TiffPixels implements PixelStore {
   }
 
   rowsOfBand(level: number): number {
-    const { blockHeight, height } = this.levels[level].image
-    return Math.min(height, blockHeight * Math.max(1, Math.floor(256 / blockHeight)))
+    const { blockHeight, height, width, channels, bits } = this.levels[level].image
+    const bytes = width * blockHeight * channels * (bits / 8)
+    return Math.min(height, blockHeight * Math.max(1, Math.floor(bandBytes / bytes)))
   }
 
   close(): void {
@@ -66,7 +74,7 @@ export class TiffPixels implements PixelStore {
   }
 
   /** The blocks of a group, from the cache or on their way. */
-  private load(level: number, group: number[]): Map<number, Promise<BlockSamples>> {
+  private load(level: number, group: number[], pool?: DecodePool): Map<number, Promise<BlockSamples>> {
     const { image } = this.levels[level]
     const blocks = new Map<number, Promise<BlockSamples>>()
     const missing: number[] = []
@@ -79,7 +87,9 @@ export class TiffPixels implements PixelStore {
     const packed = image.partsOfStrip > 1 ? null : this.readPacked(image, missing)
     for (const index of missing) {
       const block = packed
-        ? packed.then((bytes) => this.decode(image, index, bytes(index)))
+        ? packed.then(
+            (bytes) => pool?.decodeBlock(image, index, bytes(index)) ?? this.decode(image, index, bytes(index)),
+          )
         : this.band(image, level, index)
       this.cache.set(`${level}/${index}`, block, blockBytes(image, index))
       blocks.set(index, block)
