@@ -50,6 +50,8 @@ const laminaeAround = 64
 const doubtfulLaminae = 20
 /** Correlation of each lamina's height with the next but one, less that with the next, from which they are taken to alternate. */
 const leastAlternation = 0.55
+/** Laminae that stand closer than this share of the thickness are two to each already. */
+const leastSpacing = 0.82
 /** Standard deviation of the smoother, and least distance of laminae, as shares of the thickness. */
 const smoothingShare = 0.1
 const distanceShare = 0.35
@@ -57,7 +59,8 @@ const distanceShare = 0.35
 /**
  * Two laminae a year, of unlike strength, repeat at half a year already. Then strong and weak ones take turns: heights of
  * neighbours oppose each other, heights of every other one agree, for dark and light laminae alike. Drawn profiles of one
- * lamina a year stay below 0.5, those with a second lamina in most years lie above 0.7 (median over both kinds).
+ * lamina a year stay below 0.5, those with a second lamina in most years lie above 0.7 (median over both kinds). Where two
+ * laminae stand within each thickness, it is that of the year already.
  */
 function doubledWhereAlternating(column: Float64Array, thickness: Float64Array): Float64Array {
   const smooth = gaussianSmooth(
@@ -92,7 +95,10 @@ function alternationOf(signal: Float64Array, thickness: Float64Array): Float64Ar
   for (let row = 0; row < signal.length; row++) {
     while (lamina + 1 < laminae.length && laminae[lamina + 1] <= row) lamina++
     if (!(squares[lamina] > 0)) continue
-    const held = Math.min(laminae.length, lamina + laminaeAround + 1) - Math.max(0, lamina - laminaeAround)
+    const first = Math.max(0, lamina - laminaeAround)
+    const last = Math.min(laminae.length - 1, lamina + laminaeAround)
+    const held = last + 1 - first
+    if (!(laminae[last] - laminae[first] > leastSpacing * thickness[row] * (held - 1))) continue
     alternation[row] = (((nextButOne[lamina] - next[lamina]) / squares[lamina]) * held) / (held + doubtfulLaminae)
   }
   return alternation
