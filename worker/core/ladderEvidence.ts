@@ -23,7 +23,8 @@ const features = [
   'log contrast',
   'log edge strength in the same units',
   'continuity',
-  'log width over local thickness',
+  'log width over local thickness, where narrow',
+  'the same, where wide',
   'log edge strength over the strongest nearby',
 ] as const
 export const featureCount = features.length
@@ -33,20 +34,22 @@ export const featureCount = features.length
  */
 const anchors = [
   // The looks of a usual year.
-  { looks: [0, 0, 0.1, 0, 0], logOdds: 4.5, deviation: 1 },
+  { looks: [0, 0, 0.1, 0, 0, 0], logOdds: 4.5, deviation: 1 },
   // Half as strong: a pale year here, a second lamina of the year there.
-  { looks: [-0.8, -0.9, 0, -0.3, -0.7], logOdds: 0.5, deviation: 2 },
+  { looks: [-0.8, -0.9, 0, -0.3, 0, -0.7], logOdds: 0.5, deviation: 2 },
   // What grain looks like.
-  { looks: [-2.2, -2, -0.4, -0.7, -1.5], logOdds: -5.5, deviation: 1 },
+  { looks: [-2.2, -2, -0.4, -0.7, 0, -1.5], logOdds: -5.5, deviation: 1 },
 ]
 /** Coefficients of the constant and the features that agree with that, and how far each may depart by itself. */
-const priorMean = [4.2, 0.6, 2.2, 2, 1, 3]
-const priorDeviation = [3, 1, 1.5, 1, 1, 1.5]
+const priorMean = [4.2, 0.6, 2.2, 2, 1, -3, 3]
+const priorDeviation = [3, 1, 1.5, 1, 1, 1.5, 1.5]
 /** Looks alone never say more than this. */
 const mostLogOdds = 6
 /** Logs of features are bounded: beyond a twelfth or three times the usual nothing more is learned. */
 const leastLog = -2.5
 const mostLog = 1.1
+/** Log of how much wider than usual a lamina may be before it speaks against a year. */
+const usualWidth = 0.3
 /** Candidates closer than this share of the local thickness are likely to belong to the same year. */
 const nearbyShare = 0.7
 /** Layers over which the usual looks are remembered, and layers that the core's mean is worth. */
@@ -69,7 +72,8 @@ export function looksOf(candidates: Candidates, median: Float64Array): Columns {
     values[at + 1] = logOf(candidates.edgeStrength[i] * spread, 1e-9)
     values[at + 2] = Number.isNaN(candidates.continuity[i]) ? 1 : candidates.continuity[i]
     values[at + 3] = logOf(candidates.width[i] / median[i], 1e-3)
-    values[at + 4] = Math.min(0, logOf(candidates.edgeStrength[i], 1e-9) - logOf(nearby[i], 1e-9))
+    values[at + 4] = values[at + 3]
+    values[at + 5] = Math.min(0, logOf(candidates.edgeStrength[i], 1e-9) - logOf(nearby[i], 1e-9))
   }
   return { count, values }
 }
@@ -141,12 +145,13 @@ export function localReference({ count, values }: Columns, belief: Float64Array)
 /** What the regression sees: looks against the usual looks, bounded. */
 export function featuresOf({ count, values }: Columns, reference: Columns): Columns {
   const features = new Float64Array(count * featureCount)
-  for (let at = 0; at < features.length; at++) {
+  for (let at = 0; at < features.length; at++) features[at] = bounded(values[at] - reference.values[at])
+  for (let at = 0; at < features.length; at += featureCount) {
+    // A narrow lamina is often grain that survived the smoothing; one as wide as a layer is the cap or the body of an event bed.
+    features[at + 4] = Math.max(0, features[at + 3] - usualWidth)
+    features[at + 3] = Math.min(0, features[at + 3])
     // The last feature is a comparison already.
-    const own = at % featureCount === featureCount - 1
-    const difference = bounded(own ? values[at] : values[at] - reference.values[at])
-    // A wide lamina is as good as a usual one; a narrow one is often grain that survived the smoothing.
-    features[at] = at % featureCount === 3 ? Math.min(0.5, difference) : difference
+    features[at + 5] = bounded(values[at + 5])
   }
   return { count, values: features }
 }
