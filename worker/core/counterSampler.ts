@@ -12,6 +12,8 @@ const nodes = clarityNodes.length
 /** Own guess for a step before it is tuned; log odds. */
 const firstStep = 0.3
 const tuneEvery = 25
+/** Cells of so few sites are faster done site by site than by binomial numbers. */
+const fewSites = 4
 
 /** log(1 + e^x) where x is a log odds and so never huge. */
 const softPlus = (x: number) => Math.log1p(Math.exp(x))
@@ -74,8 +76,15 @@ export class CounterSampler {
   private readonly falseInGroup: Float64Array
   private readonly falseMarks: Float64Array
   private readonly falseDoubted: Float64Array
+  /** 1 where a counter looked, [counters x strata]; spacing and quality class of each stratum, [strata]. */
+  private readonly looked: Uint8Array
+  private readonly spacingOf: Float64Array
+  private readonly qualityOf: Uint8Array
   private readonly missChance: Float64Array
   private readonly doubtChance: Float64Array
+  private readonly tallies: Float64Array[]
+  /** Density of the cell at hand in each class of clarity. */
+  private readonly weight = new Float64Array(nodes)
   private readonly steps: { miss: StepSize[]; doubt: StepSize[]; shape: StepSize[] }
 
   constructor(
@@ -106,8 +115,25 @@ export class CounterSampler {
     this.falseInGroup = new Float64Array(groups.length)
     this.falseMarks = new Float64Array(counters * this.qualities)
     this.falseDoubted = new Float64Array(counters)
+    const group = (t: number) => groups[Math.floor(t / (bins * nodes))]
+    const strata = { length: this.strata }
+    this.looked = Uint8Array.from(
+      { length: counters * this.strata },
+      (_, at) => group(at % this.strata).seenBy[Math.floor(at / this.strata)],
+    )
+    this.spacingOf = Float64Array.from(strata, (_, t) => cells.spacing[Math.floor(t / nodes) % bins])
+    this.qualityOf = Uint8Array.from(strata, (_, t) => group(t).quality)
     this.missChance = new Float64Array(counters * this.strata)
     this.doubtChance = new Float64Array(counters * this.strata)
+    this.tallies = [
+      this.yearsIn,
+      this.missed,
+      this.doubted,
+      this.falseInBin,
+      this.falseInGroup,
+      this.falseMarks,
+      this.falseDoubted,
+    ]
     const sizes = (n: number) => Array.from({ length: n }, () => new StepSize())
     this.steps = { miss: sizes(counters), doubt: sizes(counters), shape: sizes(2 + this.qualities) }
     this.hardness = this.hardnessFor(this.beta, this.sigma, this.gamma)
@@ -157,12 +183,8 @@ export class CounterSampler {
     return unseenShare / (1 - unseenShare)
   }
 
-  private groupOf(t: number): number {
-    return Math.floor(t / (this.cells.bins * nodes))
-  }
-
   private sees(k: number, t: number): boolean {
-    return this.cells.groups[this.groupOf(t)].seenBy[k] === 1
+    return this.looked[k * this.strata + t] === 1
   }
 
   private missedByAllChance(t: number): number {
@@ -172,11 +194,11 @@ export class CounterSampler {
   }
 
   private hardnessFor(beta: number, sigma: number, gamma: Float64Array): Float64Array {
-    const { bins, spacing, groups } = this.cells
-    return Float64Array.from({ length: this.strata }, (_, t) => {
-      const bin = Math.floor(t / nodes) % bins
-      return beta * spacing[bin] + gamma[groups[this.groupOf(t)].quality] + sigma * clarityNodes[t % nodes]
-    })
+    const hardness = new Float64Array(this.strata)
+    for (let t = 0; t < hardness.length; t++) {
+      hardness[t] = beta * this.spacingOf[t] + gamma[this.qualityOf[t]] + sigma * clarityNodes[t % nodes]
+    }
+    return hardness
   }
 
   private refreshChances(): void {
@@ -190,33 +212,43 @@ export class CounterSampler {
 
   /** Draws, cell by cell, how many of its sites are years and of which clarity; the others are false boundaries. */
   private classifySites(): void {
-    for (const tally of [
-      this.yearsIn,
-      this.missed,
-      this.doubted,
-      this.falseInBin,
-      this.falseInGroup,
-      this.falseMarks,
-      this.falseDoubted,
-    ])
-      tally.fill(0)
-    const weight = new Float64Array(nodes)
-    for (const [c, cell] of this.cells.cells.entries()) {
-      const first = (cell.group * this.cells.bins + cell.bin) * nodes
+    for (const tally of this.tallies) tally.fill(0)
+    const { weight, cells } = this
+    for (let c = 0; c < cells.cells.length; c++) {
+      const cell = cells.cells[c]
+      const first = (cell.group * cells.bins + cell.bin) * nodes
+      const intensity = this.intensity[first / nodes]
       let real = 0
       for (let node = 0; node < nodes; node++) {
-        weight[node] = clarityWeights[node] * this.intensity[first / nodes] * this.yearDensity(cell, first + node)
+        weight[node] = clarityWeights[node] * intensity * this.yearDensity(cell, first + node)
         real += weight[node]
       }
-      this.probability[c] = real / (real + this.falseDensity(cell))
-      let left = drawBinomial(this.random, cell.sites, this.probability[c])
-      this.tallyFalse(cell, cell.sites - left)
-      for (let node = 0; node < nodes && left > 0; node++) {
-        const here = node === nodes - 1 ? left : drawBinomial(this.random, left, Math.min(1, weight[node] / real))
-        this.tallyYears(cell, first + node, here)
-        left -= here
-        real -= weight[node]
-      }
+      const all = real + this.falseDensity(cell)
+      this.probability[c] = real / all
+      if (cell.sites <= fewSites) this.classifyOneByOne(cell, first, all)
+      else this.classifyTogether(cell, first, real, this.probability[c])
+    }
+  }
+
+  private classifyOneByOne(cell: Cell, first: number, all: number): void {
+    for (let site = 0; site < cell.sites; site++) {
+      let left = this.random.uniform() * all
+      let node = 0
+      while (node < nodes && left >= this.weight[node]) left -= this.weight[node++]
+      if (node < nodes) this.tallyYears(cell, first + node, 1)
+      else this.tallyFalse(cell, 1)
+    }
+  }
+
+  private classifyTogether(cell: Cell, first: number, real: number, probability: number): void {
+    let left = drawBinomial(this.random, cell.sites, probability)
+    let rest = real
+    this.tallyFalse(cell, cell.sites - left)
+    for (let node = 0; node < nodes && left > 0; node++) {
+      const here = node === nodes - 1 ? left : drawBinomial(this.random, left, Math.min(1, this.weight[node] / rest))
+      this.tallyYears(cell, first + node, here)
+      left -= here
+      rest -= this.weight[node]
     }
   }
 

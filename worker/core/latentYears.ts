@@ -144,14 +144,13 @@ const logMean = (a: number, b: number) => (a === b ? a : (b - a) / Math.log(b / 
 
 /** 95 % interval of years times a log-normal factor of median 1, over all draws. */
 function biasedInterval(draws: Float64Array, sd: number): [number, number] {
-  const { mean } = momentsOf(draws)
-  const below = (log: number) => {
-    let sum = 0
-    for (const years of draws) sum += years > 0 ? normalCdf((log - Math.log(years)) / sd) : 1
-    return sum / draws.length
-  }
-  const spread = Math.log(Math.max(2, mean)) + 10 * sd
-  return [Math.exp(rootOf(below, 0.025, -spread, spread)), Math.exp(rootOf(below, 0.975, -spread, spread))]
+  const times = new Map<number, number>()
+  for (const years of draws) times.set(years, (times.get(years) ?? 0) + 1)
+  const logs = [...times].map(([years, n]) => ({ log: Math.log(Math.max(years, 0.5)), share: n / draws.length }))
+  const below = (log: number) => logs.reduce((sum, one) => sum + one.share * normalCdf((log - one.log) / sd), 0)
+  const all = logs.map(({ log }) => log)
+  const [low, high] = [Math.min(...all) - 10 * sd, Math.max(...all) + 10 * sd]
+  return [Math.exp(rootOf(below, 0.025, low, high)), Math.exp(rootOf(below, 0.975, low, high))]
 }
 
 /** Where a rising function passes a level, by bisection. */
