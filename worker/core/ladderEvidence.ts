@@ -37,8 +37,9 @@ const anchors = [
   { looks: [0, 0, 0.1, 0, 0, 0], logOdds: 4.5, deviation: 1 },
   // Half as strong: a pale year here, a second lamina of the year there.
   { looks: [-0.8, -0.9, 0, -0.3, 0, -0.7], logOdds: 0.5, deviation: 2 },
-  // What grain looks like.
-  { looks: [-2.2, -2, -0.4, -0.7, 0, -1.5], logOdds: -5.5, deviation: 1 },
+  // What grain looks like, beside a lamina and by itself.
+  { looks: [-2.2, -2, -0.4, -0.7, 0, -1.5], logOdds: -6, deviation: 1 },
+  { looks: [-2.2, -2, -0.4, -0.5, 0, 0], logOdds: -5, deviation: 1 },
 ]
 /** Coefficients of the constant and the features that agree with that, and how far each may depart by itself. */
 const priorMean = [4.2, 0.6, 2.2, 2, 1, -3, 3]
