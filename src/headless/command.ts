@@ -3,13 +3,14 @@ import { argumentFault, parseCall } from './arguments.ts'
 import { count } from './count.ts'
 import { date } from './date.ts'
 import { oneLine } from './oneLine.ts'
+import { prepare } from './prepare.ts'
 import { profile } from './profile.ts'
 import { calibrate } from './calibrate.ts'
 import { compare } from './compare.ts'
 import type { Verb } from './verb.ts'
 
 /** The verbs, in the order of the job. */
-const verbs: readonly Verb[] = [profile, count, compare, date, calibrate]
+const verbs: readonly Verb[] = [prepare, profile, count, compare, date, calibrate]
 
 function help(): string {
   const width = Math.max(...verbs.map(({ name }) => name.length))

@@ -135,7 +135,7 @@ export class SharpPixels implements PixelStore {
 }
 
 /** The colour space in which sharp hands out the samples as they are. It has none for 8-bit grey with alpha. */
-function colourSpace(channels: number, bits: number): string {
+export function colourSpace(channels: number, bits: number): string {
   if (bits === 16) return channels >= 3 ? 'rgb16' : 'grey16'
   return channels === 1 ? 'b-w' : 'srgb'
 }

@@ -32,7 +32,7 @@ export async function openSharpScan(path: string): Promise<Scan> {
 }
 
 /** libvips refuses or garbles separate planes and divides premultiplied colours by their alpha; our own reader does neither. */
-function misreadBySharp(description: Description): description is Description & { format: 'tiff' } {
+export function misreadBySharp(description: Description): description is Description & { format: 'tiff' } {
   if (description.format !== 'tiff') return false
   const { planes, premultiplied } = description.layout.levels[0].image
   return planes > 1 || premultiplied
@@ -53,7 +53,7 @@ class OwnPixels extends TiffPixels {
   }
 }
 
-async function openFile(path: string): Promise<FileHandle> {
+export async function openFile(path: string): Promise<FileHandle> {
   let handle: FileHandle
   try {
     handle = await open(path)
@@ -71,7 +71,7 @@ async function openFile(path: string): Promise<FileHandle> {
   throw new Fault('unreadable', 'file', path, `${path} is not a file. Name the scan itself.`)
 }
 
-function fileSource(handle: FileHandle, size: number): ByteSource {
+export function fileSource(handle: FileHandle, size: number): ByteSource {
   return {
     size,
     async read(offset, length) {

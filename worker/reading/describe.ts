@@ -1,4 +1,4 @@
-import { checkDimensions, checkWholeBytes } from './limits.ts'
+import { checkWholeBytes } from './limits.ts'
 import { readJpegLayout } from './jpeg.ts'
 import type { JpegLayout } from './jpeg.ts'
 import { pagedSource } from './bytes.ts'
@@ -19,14 +19,17 @@ export type Description = { info: Omit<ScanInfo, 'sha256' | 'levels'> } & (
   | { format: 'tiff'; layout: TiffLayout }
 )
 
-/** Finds out what a file is and whether it is whole. Throws a Fault that says what is wrong with it and what to do. */
-export async function describeScan(file: ByteSource, name: string): Promise<Description> {
-  const description = await describeFormat(file, name)
+/**
+ * Finds out what a file is and whether nothing of it is missing. Throws a Fault that says what is wrong with it and what to
+ * do. `whole`: a PNG, JPEG or WebP will be held in memory, and one that is too large for that is refused.
+ */
+export async function describeScan(file: ByteSource, name: string, whole = true): Promise<Description> {
+  const description = await describeFormat(file, name, whole)
   description.info.notes.push(...placeholderNotes(description.info.resolution))
   return description
 }
 
-async function describeFormat(file: ByteSource, name: string): Promise<Description> {
+async function describeFormat(file: ByteSource, name: string, whole: boolean): Promise<Description> {
   const source = pagedSource(file)
   const { format, notes } = await sniff(source, name)
   const named = { name, bytes: file.size }
@@ -37,7 +40,7 @@ async function describeFormat(file: ByteSource, name: string): Promise<Descripti
     return { format, layout, info: { ...named, ...shape, format, notes: [...notes, ...layout.notes] } }
   }
   if (format === 'png') {
-    const layout = await readPngLayout(source)
+    const layout = await readPngLayout(source, whole)
     const { width, height, channels, bits, resolution } = layout
     const shape = { width, height, channels, bits, resolution }
     return {
@@ -48,11 +51,10 @@ async function describeFormat(file: ByteSource, name: string): Promise<Descripti
   }
   const described =
     format === 'jpeg'
-      ? { format, layout: await readJpegLayout(source) }
+      ? { format, layout: await readJpegLayout(source, whole) }
       : { format, layout: await readWebpLayout(source) }
   const { width, height, channels, resolution } = described.layout
-  checkDimensions(width, height, true)
-  checkWholeBytes(width, height, channels, 8)
+  if (whole) checkWholeBytes(width, height, channels, 8)
   const shape = { width, height, channels, bits: 8 as const, resolution }
   return {
     ...described,

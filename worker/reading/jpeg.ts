@@ -30,7 +30,7 @@ interface Frame {
 const windowBytes = 1 << 20
 
 /** Walks a JPEG from marker to marker, through the entropy-coded data, until it closes; a file without its end is refused. */
-export async function readJpegLayout(source: ByteSource): Promise<JpegLayout> {
+export async function readJpegLayout(source: ByteSource, whole = true): Promise<JpegLayout> {
   const essential: JpegLayout['essential'] = [{ from: 0, to: 2 }]
   const notes: string[] = []
   let resolution: StatedResolution | null = null
@@ -69,7 +69,7 @@ export async function readJpegLayout(source: ByteSource): Promise<JpegLayout> {
   }
   if (!frame || scans === 0) throw damaged('JPEG', at, 'ends before any image data')
   const { width, height, components, leastBits } = frame
-  checkDimensions(width, height, true)
+  checkDimensions(width, height, whole)
   checkLength(leastBits, essential, width, height)
   return {
     width,

@@ -45,7 +45,7 @@ export const bestDeflateRatio = 1032
 const wanted = new Set(['IHDR', 'PLTE', 'tRNS', 'pHYs', 'eXIf'])
 
 /** Walks the chunks of a PNG (PNG specification, section 5) without touching the pixels. */
-export async function readPngLayout(source: ByteSource): Promise<PngLayout> {
+export async function readPngLayout(source: ByteSource, whole = true): Promise<PngLayout> {
   const chunks = new Map<string, Uint8Array>()
   const data: PngLayout['data'] = []
   let at = 8
@@ -63,7 +63,7 @@ export async function readPngLayout(source: ByteSource): Promise<PngLayout> {
     if (wanted.has(type) && !chunks.has(type)) chunks.set(type, await readChunk(source, at, length, type))
     at += 12 + length
   }
-  return layoutOf(chunks, data)
+  return layoutOf(chunks, data, whole)
 }
 
 async function readChunk(source: ByteSource, at: number, length: number, type: string): Promise<Uint8Array> {
@@ -75,7 +75,7 @@ async function readChunk(source: ByteSource, at: number, length: number, type: s
   return body.subarray(4)
 }
 
-async function layoutOf(chunks: Map<string, Uint8Array>, data: PngLayout['data']): Promise<PngLayout> {
+async function layoutOf(chunks: Map<string, Uint8Array>, data: PngLayout['data'], whole: boolean): Promise<PngLayout> {
   const header = readHeader(chunks.get('IHDR')!)
   const { width, height, depth, colour } = header
   const palette = colour === 3 ? (chunks.get('PLTE') ?? null) : null
@@ -87,8 +87,8 @@ async function layoutOf(chunks: Map<string, Uint8Array>, data: PngLayout['data']
   const colours = colour === 3 ? 3 : samplesOfColour[colour]
   const channels = (colours + (transparency ? 1 : 0)) as 1 | 2 | 3 | 4
   const bits = depth === 16 ? 16 : 8
-  checkDimensions(width, height, true)
-  checkWholeBytes(width, height, channels, bits)
+  checkDimensions(width, height, whole)
+  if (whole) checkWholeBytes(width, height, channels, bits)
   const stored = data.reduce((sum, { length }) => sum + length, 0)
   const raw = height * Math.ceil((width * samplesOfColour[colour] * depth) / 8)
   if (!(stored * bestDeflateRatio >= raw)) {
