@@ -1,12 +1,14 @@
-import { certain, unseen } from '../../worker/core/alignment.ts'
 import { beginAgreed, settleSite } from '../commands/settleSites.ts'
 import type { AgreedSite } from '../commands/settleSites.ts'
 import type { Mark } from '../document/layerSet.ts'
 import type { Count } from '../document/project.ts'
-import { nearest } from '../view/sorted.ts'
 import type { Comparison } from './comparison.svelte.ts'
 import type { Counting } from './counting.svelte.ts'
 import type { Workbench } from './workbench.svelte.ts'
+
+/** What a counter may say of a site, as the worker numbers it: absent, doubtful, certain, not looked at. */
+const certain = 2
+const unseen = 3
 
 /** A cursor within this distance of a site stands on it, path pixels. */
 const reach = 0.5
@@ -50,7 +52,7 @@ export class Settling {
     const bySite = new Map<number, number>()
     if (!result || !this.agreed || result.alignment.position.length === 0) return bySite
     const sites = result.alignment.position
-    this.agreed.layers.position.forEach((position, index) => bySite.set(nearest(sites, position), index))
+    this.agreed.layers.position.forEach((position, index) => bySite.set(nearestSite(sites, position), index))
     return bySite
   })
   open = $derived(this.disputes.filter(({ site }) => !this.settled.has(site)))
@@ -112,4 +114,16 @@ export class Settling {
     if (!this.#workbench.dispatch(settleSite(this.#workbench.state, settlement))) return
     if (!this.#to(1, this.open) && this.open.length > 0) this.#counting.goTo(this.open[0].position)
   }
+}
+
+/** Index of the site nearest to a position; sites are sorted. */
+function nearestSite(sites: Float64Array, position: number): number {
+  let low = 0
+  let high = sites.length
+  while (low < high) {
+    const middle = (low + high) >>> 1
+    if (sites[middle] < position) low = middle + 1
+    else high = middle
+  }
+  return low > 0 && (low === sites.length || position - sites[low - 1] <= sites[low] - position) ? low - 1 : low
 }

@@ -1,4 +1,4 @@
-import type { Stretch } from './semiMarkov.ts'
+import type { Stretch } from './stretch.ts'
 import { bedFrom, bedMean } from './thicknessLaw.ts'
 import type { ThicknessLaw } from './thicknessLaw.ts'
 

@@ -1,5 +1,6 @@
 import { bedTail, layerPairs, tailLength } from './layerPairs.ts'
 import type { LayerPairs, YearLaw } from './layerPairs.ts'
+import type { Stretch } from './stretch.ts'
 import { emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
 
 /**
@@ -13,20 +14,7 @@ import { emptyStretch, recurrenceAt, survivalAt } from './thicknessLaw.ts'
  * boundary falls into the whole stretch. A ladder must hold every forced site.
  * This is a hidden semi-Markov model with explicit durations (Rabiner 1989, section IV D; Yu 2010, Artificial Intelligence 174).
  */
-export interface Stretch {
-  /** Thickness coordinate of each site, not decreasing, [sites]. */
-  u: Float64Array
-  /** How many times likelier what is seen at the site is if it is a boundary than if it is none, [sites]. */
-  weight: Float64Array
-  /** 1: the site is a boundary for certain, [sites]. */
-  forced: Uint8Array
-  /** 1: something is seen at the site; where it is no boundary it is a lamina inside a year, [sites]. */
-  shows: Uint8Array
-  /** Log of the thickness expected of a layer whose young boundary is the site, over the local median; from the layer above it, [sites]. */
-  expected: Float64Array
-  start: number
-  end: number
-}
+export type { Stretch }
 
 /** Sums over all ladders of the sites to one side that reach a site: value * exp(scale), both [sites]. */
 export interface Sweep {

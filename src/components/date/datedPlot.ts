@@ -1,4 +1,3 @@
-import { layerRowKinds } from '../../../worker/core/countedLayers.ts'
 import type { LevelAges, YearRanges } from '../../../worker/core/levelAges.ts'
 import type { DatedCore } from '../../session/dating.svelte.ts'
 import type { AgeDepthData, Band, Calendar, DatedLevel } from '../../view/plots/data.ts'
@@ -24,9 +23,11 @@ function envelope(ranges: YearRanges, rows: readonly number[], shown: (year: num
   return { low: Float64Array.from(ends, ([low]) => low), high: Float64Array.from(ends, ([, high]) => high) }
 }
 
+/** The kind of a row that is a year seen on the scan: the first of the worker's `layerRowKinds`. */
+const varve = 0
+
 /** Rows of the layers that are years: event beds and hiatuses have no age of their own to draw. */
 export function yearRows({ layers }: DatedCore): number[] {
-  const varve = layerRowKinds.indexOf('varve')
   return [...layers.kind.keys()].filter((row) => layers.kind[row] === varve)
 }
 
