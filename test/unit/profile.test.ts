@@ -207,8 +207,7 @@ describe('masks', () => {
 describe('extractProfile', () => {
   const shape: ScanShape = { width: 60, height: 80, channels: 1, bits: 8 }
   const transect = defaultTransect(shape, { axis: 'y', young: 'low' })
-  const start = (changes: object, path = transect) =>
-    extractProfile(shape, path, { ...recipe, ...changes }).next()
+  const start = (changes: object, path = transect) => extractProfile(shape, path, { ...recipe, ...changes }).next()
 
   it('names what is wrong with a recipe or a transect', () => {
     expect(() => start({ channel: 'ultraviolet' })).toThrow(

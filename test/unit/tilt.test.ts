@@ -52,8 +52,7 @@ describe('the bedding tilt, estimated from the image', () => {
   it('follows beds that steepen down the core', () => {
     const slopeAt = (y: number) => Math.tan((-2 + (10 * y) / shape.height) * degrees)
     const found = tiltOf(drawBeds(slopeAt, 15, 8, 3), path)
-    for (const row of [250, 550, 850])
-      expect(Math.abs(found[row] - (-2 + (10 * row) / shape.height))).toBeLessThan(0.7)
+    for (const row of [250, 550, 850]) expect(Math.abs(found[row] - (-2 + (10 * row) / shape.height))).toBeLessThan(0.7)
   })
 
   it('is measured against the perpendicular of the path, on an oblique one too', () => {
