@@ -9,7 +9,8 @@ const root = fileURLToPath(new URL('../..', import.meta.url))
 /** Serves the project's folder with its TypeScript as a browser reads it; `url` ends with a slash. */
 export async function serveSource(): Promise<{ url: string; close: () => Promise<void> }> {
   const server = await createServer({
-    configFile: false,
+    // The core reaches for packages of the old form, which the configuration has bundled.
+    configFile: `${root}vite.config.ts`,
     root,
     logLevel: 'error',
     // A cache of its own: two servers at work on one cache tell each other's pages that they are outdated.
