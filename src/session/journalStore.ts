@@ -4,46 +4,27 @@
  * Exports: `JournalStore` —
  * `JournalStore.open(options?)`, `list()`, `claimProject(id)` (true: this tab may write), `releaseProject(id)`,
  * `create(state)` (a new or opened project with all its journal), `load(id)` (state and what was dropped),
- * `append(state, ...transactions)` (resolves once the records are on disk), `remove(id)`, `askToPersist()`, `close()` —
- * and `snapshotEvery`.
+ * `append(state, ...transactions)` (resolves once the records are on disk), `remove(id)`, `askToPersist()`, `close()`.
+ * The rows of the database: journalTable.ts.
  *
- * Stores of the database, all lines sealed by a checksum (journal.ts):
- * projects  key id              { id, name, lake, version, changed }
- * records   key [project, seq]      { project, seq, schema, line }
- * snapshots key [project, version]  { project, version, line }; the newest two are kept
- * damaged   key automatic           { project, seq, line, reason }: dropped records, kept for whoever wants to look
+ * Where the browser has storage buckets (Chromium), everything is written twice, into two stores one after the other, and
+ * an edit counts as saved when both have it. The reason: Chromium's store (LevelDB) goes on writing to its log where a killed
+ * process left it. When the kill came between the head and the body of a log entry, the next start but one finds a broken
+ * log and clears the whole store of the site, edits of weeks included. This was seen once in 200 kills. A kill hits one of
+ * two stores that are never written at the same time, and each opening of a project brings the other back in step.
  */
-import { openDB } from 'idb'
-import type { DBSchema, IDBPDatabase } from 'idb'
 import { Fault } from '../../worker/check.ts'
-import { encodeRecord, encodeSnapshot } from '../document/journal.ts'
-import { currentSchema } from '../document/project.ts'
+import { encodeRecord } from '../document/journal.ts'
 import { recover } from '../document/recover.ts'
-import type { KeptRecord, KeptSnapshot, Recovered } from '../document/recover.ts'
+import type { Recovered } from '../document/recover.ts'
 import type { WorkbenchState } from '../document/state.ts'
 import type { Transaction } from '../document/transaction.ts'
+import { bucketFactory } from './buckets.ts'
+import { JournalTable } from './journalTable.ts'
+import type { KeptProject, ProjectEntry } from './journalTable.ts'
 import { storageFault } from './storageFault.ts'
 
-/** A snapshot is stored with every transaction whose sequence number this divides. */
-export const snapshotEvery = 200
-const snapshotsKept = 2
-
-/** What the list of projects shows. */
-export interface ProjectEntry {
-  id: string
-  name: string
-  lake: string
-  version: number
-  /** Time of the last transaction, milliseconds since 1970 UTC; 0: none yet. */
-  changed: number
-}
-
-interface Tables extends DBSchema {
-  projects: { key: string; value: ProjectEntry }
-  records: { key: [string, number]; value: KeptRecord & { project: string } }
-  snapshots: { key: [string, number]; value: KeptSnapshot & { project: string } }
-  damaged: { key: number; value: { project: string; seq: number; line: string; reason: string } }
-}
+export type { ProjectEntry } from './journalTable.ts'
 
 /** The part of the Web Locks API that is used; a test may bring its own. */
 export type Locks = Pick<LockManager, 'request'>
@@ -51,17 +32,27 @@ export type Locks = Pick<LockManager, 'request'>
 export interface StoreOptions {
   name?: string
   locks?: Locks
+  /** Where the databases are opened, one after the other in order of writing; default: the site's store and a bucket. */
+  factories?: readonly IDBFactory[]
 }
 
-const tables = ['projects', 'records', 'snapshots'] as const
+async function defaultFactories(name: string): Promise<IDBFactory[]> {
+  const mirror = await bucketFactory(`${name}-mirror`)
+  return mirror ? [indexedDB, mirror] : [indexedDB]
+}
 
-/** All keys of one project in a store with keys [project, number]. */
-function keysOf(project: string): IDBKeyRange {
-  return IDBKeyRange.bound([project, 0], [project, Infinity])
+/** Tells storage errors in words for the person at the bench; `act` completes "the browser could not …". */
+async function told<T>(act: string, work: () => Promise<T>): Promise<T> {
+  try {
+    return await work()
+  } catch (error) {
+    throw storageFault(error, act)
+  }
 }
 
 export class JournalStore {
-  readonly #db: IDBPDatabase<Tables>
+  /** The same rows in each, but for what a kill kept from the later ones. */
+  readonly #copies: readonly JournalTable[]
   readonly #locks: Locks
   readonly #name: string
   /** Projects this tab may write, with what gives each back. */
@@ -69,45 +60,46 @@ export class JournalStore {
   /** Locks given back, or on their way: a lock asked for again must wait for that. */
   readonly #released = new Map<string, Promise<unknown>>()
 
-  private constructor(db: IDBPDatabase<Tables>, locks: Locks, name: string) {
-    this.#db = db
+  private constructor(copies: readonly JournalTable[], locks: Locks, name: string) {
+    this.#copies = copies
     this.#locks = locks
     this.#name = name
   }
 
   /** Rejects with a Fault when the browser gives no storage. */
-  static async open({ name = 'winterclay', locks = navigator.locks }: StoreOptions = {}): Promise<JournalStore> {
-    try {
-      const db = await openDB<Tables>(name, 1, {
-        upgrade(database) {
-          database.createObjectStore('projects', { keyPath: 'id' })
-          database.createObjectStore('records', { keyPath: ['project', 'seq'] })
-          database.createObjectStore('snapshots', { keyPath: ['project', 'version'] })
-          database.createObjectStore('damaged', { autoIncrement: true })
-        },
-        // A newer program in another tab wants to upgrade: give way, so that it does not wait for ever.
-        blocking: (_current, _blocked, event) => (event.target as IDBDatabase).close(),
-      })
-      return new JournalStore(db, locks, name)
-    } catch (error) {
-      throw storageFault(error, 'open its storage')
-    }
+  static open({ name = 'winterclay', locks = navigator.locks, factories }: StoreOptions = {}): Promise<JournalStore> {
+    return told('open its storage', async () => {
+      const tried = (factories ?? (await defaultFactories(name))).map((factory) => JournalTable.open(factory, name))
+      const copies: JournalTable[] = []
+      const failures: unknown[] = []
+      for (const outcome of await Promise.allSettled(tried)) {
+        if (outcome.status === 'fulfilled') copies.push(outcome.value)
+        else failures.push(outcome.reason)
+      }
+      // One that does not open must not keep the other from being read; it is brought in step when it opens again.
+      if (copies.length === 0) throw failures[0]
+      return new JournalStore(copies, locks, name)
+    })
   }
 
   close(): void {
     for (const release of this.#claimed.values()) release()
     this.#claimed.clear()
-    this.#db.close()
+    for (const copy of this.#copies) copy.close()
   }
 
   /** All projects, the last changed first. */
-  async list(): Promise<ProjectEntry[]> {
-    try {
-      const entries = await this.#db.getAll('projects')
-      return entries.sort((a, b) => b.changed - a.changed)
-    } catch (error) {
-      throw storageFault(error, 'list the projects')
-    }
+  list(): Promise<ProjectEntry[]> {
+    return told('list the projects', async () => {
+      const newest = new Map<string, ProjectEntry>()
+      for (const entries of await Promise.all(this.#copies.map((copy) => copy.entries()))) {
+        for (const entry of entries) {
+          const known = newest.get(entry.id)
+          if (!known || entry.version > known.version) newest.set(entry.id, entry)
+        }
+      }
+      return [...newest.values()].sort((a, b) => b.changed - a.changed)
+    })
   }
 
   /** Makes this tab the one that writes the project; false when another tab is. The claim ends with the tab. */
@@ -142,100 +134,58 @@ export class JournalStore {
   }
 
   /** Stores a project with its journal, in place of what was kept under its id. Needs the claim. */
-  async create(state: WorkbenchState): Promise<void> {
-    const { id } = state.project
-    this.#mustBeClaimed(id)
-    try {
-      const tx = this.#db.transaction(tables, 'readwrite', { durability: 'strict' })
-      const records = tx.objectStore('records')
-      const snapshots = tx.objectStore('snapshots')
-      const writes: Promise<unknown>[] = [records.delete(keysOf(id)), snapshots.delete(keysOf(id))]
-      for (const transaction of state.journal.slice(1)) writes.push(records.add(recordOf(id, transaction)))
-      writes.push(snapshots.add({ project: id, version: state.version, line: encodeSnapshot(state) }))
-      writes.push(tx.objectStore('projects').put(entryOf(state)))
-      await completed(tx, writes)
-    } catch (error) {
-      throw storageFault(error, 'store the project')
-    }
-  }
-
-  /**
-   * Reads a project back. Where this tab holds the claim, dropped records are set aside so that new ones can take their
-   * place. Rejects with a Fault when there is no such project.
-   */
-  async load(id: string): Promise<Recovered> {
-    try {
-      const tx = this.#db.transaction(tables, 'readonly')
-      const [entry, records, snapshots] = await Promise.all([
-        tx.objectStore('projects').get(id),
-        tx.objectStore('records').getAll(keysOf(id)),
-        tx.objectStore('snapshots').getAll(keysOf(id)),
-      ])
-      if (!entry) throw new Fault('conflict', 'project', id, `the browser keeps no project "${id}"`)
-      const recovered = recover({ id, records, snapshots })
-      if (recovered.dropped.length > 0 && this.#claimed.has(id)) await this.#setAside(id, recovered)
-      return recovered
-    } catch (error) {
-      throw storageFault(error, 'read the project')
-    }
-  }
-
-  async #setAside(id: string, { state, dropped }: Recovered): Promise<void> {
-    const tx = this.#db.transaction(['records', 'snapshots', 'damaged', 'projects'], 'readwrite', {
-      durability: 'strict',
+  create(state: WorkbenchState): Promise<void> {
+    return told('store the project', async () => {
+      this.#mustBeClaimed(state.project.id)
+      for (const copy of this.#copies) await copy.write(state)
     })
-    for (const { what, seq, reason } of dropped) {
-      if (what === 'past') continue
-      const line =
-        what === 'record'
-          ? (await tx.objectStore('records').get([id, seq]))?.line
-          : (await tx.objectStore('snapshots').get([id, seq]))?.line
-      await tx.objectStore('damaged').add({ project: id, seq, line: line ?? '', reason })
-      await tx.objectStore(what === 'record' ? 'records' : 'snapshots').delete([id, seq])
-    }
-    await tx.objectStore('projects').put(entryOf(state))
-    await tx.done
   }
 
   /**
-   * Appends the transactions that led to `state`, all or none. Resolves only once the storage transaction has completed
-   * with strict durability: from then on the edits outlive the page, the browser and the power. Rejects with a Fault
-   * otherwise. Several at once cost one wait for the disk, so that a fast counter does not run ahead of it.
+   * Reads a project back from the copy that has most of it. Where this tab holds the claim, the copies are brought in step
+   * and dropped records set aside, so that new ones can take their place. Rejects with a Fault when there is no such project.
    */
-  async append(state: WorkbenchState, ...transactions: readonly Transaction[]): Promise<void> {
-    const { id } = state.project
-    this.#mustBeClaimed(id)
-    try {
-      const tx = this.#db.transaction(tables, 'readwrite', { durability: 'strict' })
-      // `add`, not `put`: a record once written is never replaced.
-      const records = tx.objectStore('records')
-      const writes: Promise<unknown>[] = transactions.map((transaction) => records.add(recordOf(id, transaction)))
-      writes.push(tx.objectStore('projects').put(entryOf(state)))
-      if (transactions.some(({ seq }) => seq % snapshotEvery === 0)) {
-        const snapshots = tx.objectStore('snapshots')
-        const old = state.version - snapshotsKept * snapshotEvery
-        writes.push(snapshots.delete(IDBKeyRange.bound([id, 0], [id, Math.max(0, old)])))
-        writes.push(snapshots.put({ project: id, version: state.version, line: encodeSnapshot(state) }))
-      }
-      await completed(tx, writes)
-    } catch (error) {
-      throw storageFault(error, 'store the edit')
+  load(id: string): Promise<Recovered> {
+    return told('read the project', async () => {
+      const kept = await Promise.all(this.#copies.map((copy) => copy.read(id)))
+      const best = bestOf(id, kept)
+      if (!best) throw new Fault('conflict', 'project', id, `the browser keeps no project "${id}"`)
+      if (this.#claimed.has(id)) await this.#bringInStep(id, best, kept)
+      return best.recovered
+    })
+  }
+
+  async #bringInStep(id: string, { recovered, from }: Best, kept: readonly (KeptProject | null)[]): Promise<void> {
+    const { state, dropped } = recovered
+    if (dropped.length > 0) await this.#copies[from].setAside(id, recovered)
+    for (const [i, copy] of this.#copies.entries()) {
+      if (i === from) continue
+      const missing = missingFrom(kept[i], state)
+      if (missing === null) await copy.write(state)
+      else if (missing.length > 0) await copy.append(state, missing)
     }
+  }
+
+  /**
+   * Appends the transactions that led to `state`, all or none. Resolves only once the storage transactions have completed
+   * with strict durability: from then on the edits outlive the page, the browser and the power. Rejects with a Fault
+   * otherwise, and may then be tried again. Several at once cost one wait for the disk, so that a fast counter does not run
+   * ahead of it.
+   */
+  append(state: WorkbenchState, ...transactions: readonly Transaction[]): Promise<void> {
+    return told('store the edit', async () => {
+      this.#mustBeClaimed(state.project.id)
+      // One after the other, never at the same time: a kill can then hit only one of them in the middle of a write.
+      for (const copy of this.#copies) await copy.append(state, transactions)
+    })
   }
 
   /** Forgets a project for good. Needs the claim. */
-  async remove(id: string): Promise<void> {
-    this.#mustBeClaimed(id)
-    try {
-      const tx = this.#db.transaction(tables, 'readwrite', { durability: 'strict' })
-      await completed(tx, [
-        tx.objectStore('projects').delete(id),
-        tx.objectStore('records').delete(keysOf(id)),
-        tx.objectStore('snapshots').delete(keysOf(id)),
-      ])
-    } catch (error) {
-      throw storageFault(error, 'remove the project')
-    }
+  remove(id: string): Promise<void> {
+    return told('remove the project', async () => {
+      this.#mustBeClaimed(id)
+      for (const copy of this.#copies) await copy.remove(id)
+    })
   }
 
   /** Asks the browser not to clear this page's storage when disk space runs low; false when it makes no promise. */
@@ -248,21 +198,38 @@ export class JournalStore {
   }
 }
 
-/** Waits until everything is written and the transaction has completed. */
-async function completed(tx: { done: Promise<void>; error: DOMException | null }, writes: Promise<unknown>[]) {
-  try {
-    await Promise.all([...writes, tx.done])
-  } catch (error) {
-    // When the disk is full each write only says that it was aborted; the transaction knows why.
-    throw tx.error ?? error
+interface Best {
+  recovered: Recovered
+  /** Index of the copy it came from. */
+  from: number
+}
+
+/** The copy that gives most of the project; a later one is only looked into where the first is wanting. */
+function bestOf(id: string, kept: readonly (KeptProject | null)[]): Best | null {
+  let best: Best | null = null
+  for (const [from, copy] of kept.entries()) {
+    if (!copy) continue
+    const wanting = !best || best.recovered.dropped.length > 0 || best.recovered.state.version < copy.entry.version
+    if (!wanting) continue
+    const recovered = recover({ id, ...copy })
+    if (!best || isBetter(recovered, best.recovered)) best = { recovered, from }
   }
+  return best
 }
 
-function recordOf(project: string, transaction: Transaction) {
-  return { project, seq: transaction.seq, schema: currentSchema, line: encodeRecord(transaction) }
+function isBetter(one: Recovered, other: Recovered): boolean {
+  if (one.state.version !== other.state.version) return one.state.version > other.state.version
+  return one.dropped.length < other.dropped.length
 }
 
-function entryOf({ project, version, journal }: WorkbenchState): ProjectEntry {
-  const { name, lake } = project.core
-  return { id: project.id, name, lake, version, changed: journal.last?.time ?? 0 }
+/** The transactions a copy lacks; null when it is not simply the beginning of the journal and must be written anew. */
+function missingFrom(copy: KeptProject | null, { journal, version }: WorkbenchState): Transaction[] | null {
+  if (!copy || copy.snapshots.length === 0) return null
+  const last = copy.records.at(-1)
+  const first = journal.since + 1
+  if (!last) return version === journal.since ? [] : null
+  const whole = copy.records.length === last.seq - journal.since && copy.records[0].seq === first
+  const known = journal.at(last.seq)
+  if (!whole || last.seq > version || !known || encodeRecord(known) !== last.line) return null
+  return journal.slice(last.seq + 1)
 }

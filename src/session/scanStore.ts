@@ -1,13 +1,14 @@
 /**
- * Copies of scan files for the next visit, in the browser's IndexedDB, by SHA-256. The browser keeps a Blob on disk beside
+ * Copies of scan files for the next visit, in the browser's IndexedDB (a bucket of their own where there are buckets, apart
+ * from the edits: see journalStore.ts), by SHA-256. The browser keeps a Blob on disk beside
  * its database and hands it back unread, so a large scan costs no memory until its pixels are asked for.
  *
  * Exports: `ScanStore` — `ScanStore.open(name?)`, `keep(sha256, file, name)` (resolves once the copy is whole and on disk),
  * `find(sha256)` (null when none is kept), `list()`, `remove(sha256)`, `close()`. Failures reject with a Fault in words for
  * the user. Whoever opens a copy hashes it again, so a damaged one is found out there.
  */
-import { openDB } from 'idb'
 import type { DBSchema, IDBPDatabase } from 'idb'
+import { bucketFactory, openDatabase } from './buckets.ts'
 import { storageFault } from './storageFault.ts'
 
 export interface KeptScan {
@@ -29,11 +30,9 @@ export class ScanStore {
 
   static async open(name = 'winterclay-scans'): Promise<ScanStore> {
     try {
-      const db = await openDB<Tables>(name, 1, {
-        upgrade(database) {
-          database.createObjectStore('scans', { keyPath: 'sha256' })
-        },
-        blocking: (_current, _blocked, event) => (event.target as IDBDatabase).close(),
+      const factory = (await bucketFactory(name)) ?? indexedDB
+      const db = await openDatabase<Tables>(factory, name, (database) => {
+        database.createObjectStore('scans', { keyPath: 'sha256' })
       })
       return new ScanStore(db)
     } catch (error) {

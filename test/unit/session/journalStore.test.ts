@@ -1,5 +1,7 @@
 import 'fake-indexeddb/auto'
-import { openDB } from 'idb'
+import { IDBFactory } from 'fake-indexeddb'
+import { openDB, wrap } from 'idb'
+import type { IDBPDatabase } from 'idb'
 import { afterEach, describe, expect, it } from 'vitest'
 import { placeBoundary } from '../../../src/commands/placeBoundary.ts'
 import { reviseCore } from '../../../src/commands/reviseCore.ts'
@@ -7,7 +9,8 @@ import { undo } from '../../../src/document/history.ts'
 import { need } from '../../../src/document/outcome.ts'
 import { applyEdit, applyTransaction, newState } from '../../../src/document/state.ts'
 import type { WorkbenchState } from '../../../src/document/state.ts'
-import { JournalStore, snapshotEvery } from '../../../src/session/journalStore.ts'
+import { JournalStore } from '../../../src/session/journalStore.ts'
+import { JournalTable, snapshotEvery } from '../../../src/session/journalTable.ts'
 import { inventedLocks } from '../../fixtures/locks.ts'
 import { stampAt, startedState } from '../../fixtures/project.ts'
 
@@ -147,15 +150,17 @@ describe('JournalStore', () => {
     expect(await second.claimProject('project-1')).toBe(true)
   })
 
-  it('never replaces a record: a second one of the same number is refused', async () => {
+  it('never replaces a record: another of the same number is refused, the same again passed over', async () => {
     const { store } = await openStore()
     await store.claimProject('project-1')
     const state = startedState()
     await store.create(state)
     await count(store, state, 1)
-    await expect(count(store, state, 1)).rejects.toThrow(
+    await count(store, state, 1)
+    await expect(count(store, state, 1, 500)).rejects.toThrow(
       'the browser could not store the edit: another tab has stored something in its place. Save a project file, then reload the page',
     )
+    expect((await store.load('project-1')).state.project.counts[0].layers.position).toEqual(Float64Array.of(10))
   })
 
   it('lists projects, the last changed first, and forgets one on demand', async () => {
@@ -172,5 +177,93 @@ describe('JournalStore', () => {
     await store.remove('p2')
     expect((await store.list()).map(({ id, version }) => `${id} at ${version}`)).toEqual(['p1 at 1'])
     await expect(store.load('p2')).rejects.toThrow('the browser keeps no project "p2"')
+  })
+})
+
+describe('JournalStore over two stores', () => {
+  /** A store over two factories, each as if on its own; `clear` empties one as a browser does with a damaged store. */
+  function openTwo() {
+    const factories = [new IDBFactory(), new IDBFactory()]
+    const locks = inventedLocks()
+    const open = async () => {
+      const store = await JournalStore.open({ name: 'two', locks, factories })
+      opened.push(store)
+      await store.claimProject('project-1')
+      return store
+    }
+    const clear = (which: number) => factories.splice(which, 1, new IDBFactory())
+    const rows = async (which: number) => {
+      const table = await JournalTable.open(factories[which], 'two')
+      const kept = await table.read('project-1')
+      table.close()
+      return kept
+    }
+    const change = async (which: number, act: (db: IDBPDatabase) => Promise<void>) => {
+      const db = await (wrap(factories[which].open('two')) as Promise<IDBPDatabase>)
+      await act(db)
+      db.close()
+    }
+    return { open, clear, rows, change }
+  }
+
+  it('keeps the same rows in both', async () => {
+    const { open, rows } = openTwo()
+    const store = await open()
+    await store.create(startedState())
+    await count(store, startedState(), 3)
+    expect(await rows(0)).toEqual(await rows(1))
+    expect((await rows(1))?.records.map(({ seq }) => seq)).toEqual([1, 2, 3, 4, 5, 6])
+  })
+
+  it.each([0, 1])('loses nothing when store %i is cleared, and fills it again', async (which) => {
+    const { open, clear, rows } = openTwo()
+    const store = await open()
+    await store.create(startedState())
+    const state = await count(store, startedState(), snapshotEvery + 3)
+    store.close()
+    clear(which)
+    const again = await open()
+    expect((await again.list()).map(({ version }) => version)).toEqual([state.version])
+    const { state: loaded, dropped } = await again.load('project-1')
+    expect([loaded, dropped]).toEqual([state, []])
+    expect((await rows(which))?.records).toEqual((await rows(1 - which))?.records)
+    const further = await count(again, loaded, 2, 1000)
+    again.close()
+    clear(1 - which)
+    expect((await (await open()).load('project-1')).state).toEqual(further)
+  })
+
+  it('brings the second in step when a kill came between the two', async () => {
+    const { open, rows, change } = openTwo()
+    const store = await open()
+    await store.create(startedState())
+    const state = await count(store, startedState(), 3)
+    store.close()
+    await change(1, async (db) => {
+      await db.delete('records', ['project-1', 6])
+      await db.put('projects', { ...(await rows(0))!.entry, version: 5 })
+    })
+    expect((await rows(1))?.records).toHaveLength(5)
+    const again = await open()
+    expect((await again.load('project-1')).state).toEqual(state)
+    expect(await rows(1)).toEqual(await rows(0))
+  })
+
+  it('goes by the sound copy when a record of the other is torn', async () => {
+    const { open, change } = openTwo()
+    const store = await open()
+    await store.create(startedState())
+    const state = await count(store, startedState(), 4)
+    store.close()
+    await change(0, async (db) => {
+      const row = (await db.get('records', ['project-1', 5])) as { line: string }
+      await db.put('records', { ...row, line: row.line.slice(0, 50) })
+    })
+    const again = await open()
+    const { state: loaded, dropped } = await again.load('project-1')
+    expect([loaded, dropped]).toEqual([state, []])
+    again.close()
+    const third = await open()
+    expect((await third.load('project-1')).state).toEqual(state)
   })
 })

@@ -68,7 +68,8 @@ describe('the stores in a real browser', () => {
       'this project is open in another tab, which does the writing; close that tab, then reload this one',
     )
     await first.close()
-    await second.waitForFunction('stores.claim()')
+    // The browser gives the lock back a moment after the tab is gone; waitForFunction would take the promise itself for true.
+    await expect.poll(() => second.evaluate('stores.claim()'), { timeout: 10_000 }).toBe(true)
     expect(await second.evaluate('stores.edit()')).toBe('done')
     expect(await second.evaluate('stores.version()')).toBe(5)
     expect(await second.evaluate('stores.reclaim()')).toBe(true)
